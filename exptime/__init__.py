@@ -1,0 +1,1 @@
+"""How much observing time buys which precision in a neutron star's mass and radius."""

@@ -1,0 +1,1 @@
+"""Files that users give, read into values that know where they stand."""

@@ -1,0 +1,1 @@
+"""Hot-spot geometries that reproduce the measured flux and pulsed fraction."""

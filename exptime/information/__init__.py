@@ -1,0 +1,1 @@
+"""Fisher information, priors, marginalisation and exposure for a precision."""

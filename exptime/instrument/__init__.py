@@ -1,0 +1,1 @@
+"""Effective area, redistribution, background and the profiles that name them."""

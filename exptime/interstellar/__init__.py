@@ -1,0 +1,1 @@
+"""Absorption on the way, and the relation of flux to normalisation."""

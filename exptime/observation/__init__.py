@@ -1,0 +1,1 @@
+"""Star, column and instrument together: expected counts per phase bin and channel."""

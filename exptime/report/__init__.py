@@ -1,0 +1,1 @@
+"""Result records made readable: text, HTML, JSON and figures."""

@@ -1,0 +1,1 @@
+"""The target file and the records made from it."""
