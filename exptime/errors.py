@@ -61,9 +61,7 @@ class InputError(ExptimeError, ValueError):
     def __init__(self, faults: Fault | str | Iterable[Fault]) -> None:
         if isinstance(faults, str):
             faults = Fault(faults)
-        self.faults: tuple[Fault, ...] = (
-            (faults,) if isinstance(faults, Fault) else tuple(faults)
-        )
+        self.faults: tuple[Fault, ...] = (faults,) if isinstance(faults, Fault) else tuple(faults)
         super().__init__("\n".join(str(fault) for fault in self.faults))
 
 

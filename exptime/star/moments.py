@@ -1,0 +1,239 @@
+r"""Harmonics of a spot's pulse, with geometry and spectrum kept apart.
+
+A ring at colatitude theta has a kernel K(phi) common to all its points. Its harmonics are taken
+straight from Gauss-Legendre nodes on the visible arc,
+
+.. math:: K_m = \frac{1}{2\pi}\int K e^{-i m \varphi(\phi)} (d\varphi/d\phi)\, d\phi,
+
+with varphi = phi + 2 pi f_spin dt the azimuth at which the ray counts at the observer; the
+azimuthal extent of the spot on the ring enters as an exact factor. The dependence on the redshift
+factor e = 1/(delta sqrt(1-u)) is expanded in Chebyshev polynomials, so that
+
+    photon flux harmonic (m, E) = E² 2/(h³c²)/D² * sum_j moments[m, j] * basis_j(E)
+
+where basis_j are the Chebyshev coefficients in e of the spectrum (`exptime.star.spectrum`).
+
+References
+----------
+Poutanen & Gierlinski 2003, MNRAS 343, 1301; Poutanen & Beloborodov 2006, MNRAS 373, 836;
+Morsink et al. 2007, ApJ 663, 1244; Bogdanov et al. 2019, ApJL 887, L26 (gamma in the area).
+"""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+from functools import cache
+
+import numpy as np
+
+from exptime.arrays import Complexes, Floats
+from exptime.constants import SPEED_OF_LIGHT_KM_S
+from exptime.star.circle import stack
+from exptime.star.emission import angular_factor
+from exptime.star.ray_table import Bent
+from exptime.star.records import Emission, HotSpot, Star
+from exptime.star.resolution import Resolution
+from exptime.star.surface import Rings, horizon_azimuth, rings_at
+from exptime.star.view import View
+
+Interval = tuple[float, float]
+
+
+@dataclass(frozen=True, slots=True)
+class Moments:
+    """Geometry of a spot's pulse.
+
+    Parameters
+    ----------
+    values : ndarray, shape (harmonics + 1, redshift_terms)
+        km².
+    redshift_range : tuple of float
+        Interval of e on which the Chebyshev polynomials stand.
+    is_hidden : bool
+        True when no part of the spot ever shows.
+    """
+
+    values: Complexes
+    redshift_range: Interval
+    is_hidden: bool
+
+
+@dataclass(frozen=True, slots=True)
+class RingKernels:
+    """Kernels of rings on their visible arcs, arrays of shape (n_ring, n_node).
+
+    Parameters
+    ----------
+    photons : ndarray
+        Kernel per rad of colatitude and longitude, times node weight and dvarphi/dphi/(2 pi),
+        km².
+    azimuth : ndarray
+        Observed azimuth varphi, rad.
+    redshift : ndarray
+        e = 1/(delta sqrt(1-u)).
+    """
+
+    photons: Floats
+    azimuth: Floats
+    redshift: Floats
+
+
+@cache
+def _legendre(count: int) -> tuple[Floats, Floats]:
+    return np.polynomial.legendre.leggauss(count)
+
+
+def ring_kernels(
+    view: View, emission: Emission, colatitude: Floats, nodes: int
+) -> RingKernels | None:
+    """Evaluate the kernels of rings.
+
+    Parameters
+    ----------
+    view : View
+        The star as seen.
+    emission : Emission
+        How its surface radiates.
+    colatitude : ndarray, shape (n_ring,)
+        rad.
+    nodes : int
+        Nodes on the visible arc; an even number.
+
+    Returns
+    -------
+    RingKernels or None
+        None when no ring is ever visible.
+    """
+    star = view.star
+    rings = rings_at(star, view.table, colatitude)
+    reach = horizon_azimuth(rings)
+    if not np.any(reach > 0.0):
+        return None
+    # Rays depend on |phi| alone: trace them on the positive half and mirror.
+    x, weight = _legendre(nodes)
+    half = nodes // 2
+    phi = reach[:, None] * x[half:]
+    bent = rings.rays.bend(rings.along[:, None] + rings.across[:, None] * np.cos(phi))
+    sine, cosine = np.sin(phi), np.cos(phi)
+    lag, lag_slope = _lag(star, rings, bent, sine)
+    area = _static_area(rings, bent)
+    sigma = _cos_sigma(rings, bent, cosine)
+    beta = _speed(star, rings)
+    gamma = 1.0 / np.sqrt(1.0 - beta**2)
+    swing = beta[:, None] * bent.sine_ratio * math.sqrt(1.0 - star.cos_inclination**2) * sine
+
+    def side(sign: float) -> tuple[Floats, Floats, Floats]:
+        boost = 1.0 / (gamma[:, None] * (1.0 + sign * swing))
+        mu = np.maximum(boost * sigma, 0.0)
+        photons = (gamma[:, None] * area * mu) * angular_factor(emission, mu)
+        photons *= (1.0 + sign * lag_slope) * (reach[:, None] * weight[half:] / (2.0 * np.pi))
+        return photons, sign * phi + lag, 1.0 / (boost * np.sqrt(1.0 - rings.u)[:, None])
+
+    sides = [side(-1.0), side(1.0)]
+    return RingKernels(*(np.concatenate(parts, axis=1) for parts in zip(*sides, strict=True)))
+
+
+def spot_moments(
+    view: View,
+    emission: Emission,
+    spot: HotSpot,
+    resolution: Resolution,
+    redshift_range: Interval | None = None,
+) -> Moments:
+    """Compute the moments of a spot, as if it were centred on longitude zero.
+
+    Parameters
+    ----------
+    view : View
+        The star as seen.
+    emission : Emission
+        How its surface radiates.
+    spot : HotSpot
+        The spot; its longitude and temperature play no part.
+    resolution : Resolution
+        Counts to compute with.
+    redshift_range : tuple of float, optional
+        Interval of e to expand on; that of the spot itself when not given.
+    """
+    rings = stack(spot.colatitude, spot.angular_radius, view.transitions, resolution.rings)
+    kernels = ring_kernels(view, emission, rings.colatitude, resolution.nodes)
+    harmonics, terms = resolution.harmonics, resolution.redshift_terms
+    if kernels is None:
+        empty = np.zeros((harmonics + 1, terms), complex)
+        return Moments(empty, redshift_range or (0.5, 2.0), True)
+    low, high = redshift_range or widened(
+        (float(kernels.redshift.min()), float(kernels.redshift.max())), 1e-3
+    )
+    variable = (2.0 * kernels.redshift - (high + low)) / (high - low)
+    basis = _chebyshev(variable, terms) * kernels.photons[..., None]
+    waves = _powers(np.exp(-1j * kernels.azimuth), harmonics)
+    order = np.arange(harmonics + 1)
+    # Extent of the ring within the spot: 2 d sinc(m d), and the weight in colatitude.
+    extent = 2.0 * rings.half_width[:, None] * np.sinc(order * rings.half_width[:, None] / np.pi)
+    factor = extent * rings.weight[:, None]
+    real = np.einsum("rm,rmj->mj", factor, np.ascontiguousarray(waves.real) @ basis)
+    imaginary = np.einsum("rm,rmj->mj", factor, np.ascontiguousarray(waves.imag) @ basis)
+    return Moments(real + 1j * imaginary, (low, high), False)
+
+
+def widened(interval: Interval, share: float) -> Interval:
+    """Return an interval wider than the one given by a share of its ends, never empty."""
+    return interval[0] * (1.0 - share), interval[1] * (1.0 + share)
+
+
+def _lag(star: Star, rings: Rings, bent: Bent, sine: Floats) -> tuple[Floats, Floats]:
+    """Return 2 pi f dt, rad, and its derivative with respect to phi for phi > 0."""
+    turn = 2.0 * np.pi * star.spin_hz / SPEED_OF_LIGHT_KM_S
+    radius, horizon = rings.radius_km, star.schwarzschild_radius_km
+    sunk = star.radius_km - radius
+    radial = sunk + horizon * np.log1p(sunk / (radius - horizon))
+    lag = turn * (radius[:, None] * bent.delay + radial[:, None])
+    # c dt = b dpsi along a fixed radius, with b = R sin(alpha)/sqrt(1-u), and
+    # sin(psi) dpsi = sin i sin theta sin(phi) dphi.
+    impact = radius / np.sqrt(1.0 - rings.u)
+    slope = turn * (impact * rings.across)[:, None] * bent.sine_ratio * sine
+    return lag, slope
+
+
+def _static_area(rings: Rings, bent: Bent) -> Floats:
+    """Return lensing * r² sin(theta) sqrt(1 + f²)/(1 - u), km²."""
+    ring = rings.radius_km**2 * np.sin(rings.colatitude) * np.hypot(1.0, rings.tangent)
+    return np.asarray((ring / (1.0 - rings.u))[:, None] * bent.lensing)
+
+
+def _cos_sigma(rings: Rings, bent: Bent, cosine: Floats) -> Floats:
+    lean = rings.lean[:, None] - rings.sway[:, None] * cosine
+    tangent = rings.tangent[:, None]
+    return np.asarray((bent.cos_alpha + bent.sine_ratio * lean * tangent) / np.hypot(1.0, tangent))
+
+
+def _speed(star: Star, rings: Rings) -> Floats:
+    """Return the speed of the surface over that of light, for a static observer there."""
+    turn = 2.0 * np.pi * star.spin_hz / SPEED_OF_LIGHT_KM_S
+    return np.asarray(turn * rings.radius_km * np.sin(rings.colatitude) / np.sqrt(1.0 - rings.u))
+
+
+def _chebyshev(t: Floats, terms: int) -> Floats:
+    """Return T_0..T_(terms-1) of t on a new last axis."""
+    basis = np.empty((*t.shape, terms))
+    basis[..., 0] = 1.0
+    if terms > 1:
+        basis[..., 1] = t
+    for k in range(2, terms):
+        basis[..., k] = 2.0 * t * basis[..., k - 1] - basis[..., k - 2]
+    return basis
+
+
+def _powers(base: Complexes, highest: int) -> Complexes:
+    """Return base**m for m = 0..highest on a new axis before the last, by doubling."""
+    powers = np.empty((base.shape[0], highest + 1, base.shape[1]), complex)
+    powers[:, 0] = 1.0
+    have = 1
+    power = base
+    while have <= highest:
+        take = min(have, highest + 1 - have)
+        np.multiply(powers[:, :take], power[:, None], out=powers[:, have : have + take])
+        power = power * power
+        have *= 2
+    return powers
