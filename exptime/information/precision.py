@@ -208,4 +208,4 @@ def _sigma(matrix: Floats, directions: Floats) -> Floats:
 
 
 def _root(variances: Floats | Sequence[float]) -> Floats:
-    return np.sqrt(np.maximum(np.asarray(variances), 0.0))
+    return np.asarray(np.sqrt(np.maximum(np.asarray(variances), 0.0)))
