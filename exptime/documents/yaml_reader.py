@@ -5,6 +5,7 @@ Anchors, aliases, tags and deep nesting are refused before anything is built.
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import Final
 
 import yaml
@@ -75,7 +76,8 @@ def parse_yaml(text: str, file: str, faults: Faults, *, allow_tags: bool = False
         remedy = 'Write lines such as "name: Candidate A".'
         faults.add("the file holds no keys with values.", Place(file, 1), remedy)
         return None
-    return node
+    # A key that is missing from the whole document stands in no line.
+    return replace(node, place=Place(file))
 
 
 def _refuse_what_is_not_plain(text: str, file: str, allow_tags: bool) -> None:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from typing import Literal
 
 from exptime.arrays import Floats
@@ -242,6 +242,8 @@ class Target:
         How the spots radiate.
     hot_spots : tuple of KnownSpot or None
         None: geometries are drawn.
+    abundances : {"interstellar", "solar-1982"}
+        Abundances of the absorbing gas.
     entries : tuple of Entry
         The input as given, in file order.
     assumptions : tuple of str
@@ -263,7 +265,7 @@ class Target:
     radius: Measured | None = None
     inclination: Measured | None = None
     figure: Figure = "oblate"
-    emission: Emission = Emission()
+    emission: Emission = field(default_factory=Emission)
     hot_spots: tuple[KnownSpot, ...] | None = None
     abundances: Literal["interstellar", "solar-1982"] = "interstellar"
     entries: tuple[Entry, ...] = ()
