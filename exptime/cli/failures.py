@@ -1,0 +1,97 @@
+"""Turn every way a command can fail into one message and an exit status."""
+
+from __future__ import annotations
+
+import os
+import sys
+import traceback
+from collections.abc import Sequence
+from typing import Final
+
+from exptime.errors import ExptimeError, InputError
+
+DONE: Final = 0
+FAILED: Final = 1
+MENDABLE: Final = 2
+INTERRUPTED: Final = 130
+
+
+def run_guarded(argv: Sequence[str]) -> int:
+    """Run a command and return its exit status; nothing but SystemExit of help is let through.
+
+    Parameters
+    ----------
+    argv : sequence of str
+        Arguments without the name of the program.
+    """
+    from exptime.cli.parser import run
+
+    try:
+        run(argv)
+        sys.stdout.flush()
+    except SystemExit as stop:
+        # argparse ends this way after --help and --version.
+        return _flushed(stop.code if isinstance(stop.code, int) else DONE)
+    except BrokenPipeError:
+        return _reader_left()
+    except KeyboardInterrupt:
+        print("exptime: interrupted", file=sys.stderr)
+        return INTERRUPTED
+    except Exception as error:  # noqa: BLE001  the last resort: say it in one line
+        if "--debug" in argv:
+            traceback.print_exc()
+        return _explain(error)
+    return DONE
+
+
+def _explain(error: Exception) -> int:
+    """Print what went wrong, each fault on its line, and return the exit status."""
+    if isinstance(error, InputError):
+        for fault in error.faults:
+            _say(str(fault))
+        return MENDABLE
+    if isinstance(error, ExptimeError):
+        _say(str(error))
+    elif isinstance(error, ModuleNotFoundError):
+        _say(f"the package {error.name} is missing; install exptime again with pip")
+    elif isinstance(error, MemoryError):
+        _say("the memory of this machine is not enough for this job")
+    elif isinstance(error, OSError):
+        name = f"{error.filename}: " if error.filename is not None else ""
+        _say(f"{name}{error.strerror or error}")
+    else:
+        summary = next(iter(str(error).splitlines()), "")
+        _say(f"internal error, {type(error).__name__}: {summary} (--debug shows where)")
+    return FAILED
+
+
+def _say(message: str) -> None:
+    """Print one message to standard error on a line of its own."""
+    print(f"exptime: {printable(message)}", file=sys.stderr)
+
+
+def printable(text: str) -> str:
+    """Return the text on one line, without characters that steer a terminal."""
+    return "".join(
+        character if character.isprintable() else " " if character.isspace() else "\ufffd"
+        for character in text
+    )
+
+
+def _flushed(status: int) -> int:
+    """Return the status once standard output is written out."""
+    try:
+        sys.stdout.flush()
+    except BrokenPipeError:
+        return _reader_left()
+    return status
+
+
+def _reader_left() -> int:
+    """Stop quietly because the program that reads our output has ended."""
+    try:
+        # Else the interpreter tries to flush once more at exit and complains.
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+    except (OSError, ValueError):
+        pass
+    return FAILED

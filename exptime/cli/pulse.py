@@ -1,0 +1,100 @@
+"""The command ``pulse``: photon flux or expected counts against phase and energy."""
+
+from __future__ import annotations
+
+import argparse
+from typing import Any, Final
+
+from exptime.cli.arguments import Once, add_delivery, add_draws, add_instrument, add_target
+from exptime.cli.delivery import deliver, refuse_output
+from exptime.cli.gathering import Gathering
+from exptime.cli.options import read_energies, read_exposure, read_whole
+from exptime.cli.progress_bar import progress_bar
+from exptime.errors import Fault, InputError
+
+DEFAULT_ENERGIES: Final = "0.3,0.5,1,2 keV"
+DEFAULT_PHASES: Final = "32"
+
+_EPILOG: Final = """\
+example:
+  exptime pulse demo.yaml --energies "0.3,0.5,1 keV" --phases 16
+  exptime pulse demo.yaml -i soft-concentrator --exposure 300ks --format json
+
+Without hot spots in the target file the pulse is that of the median geometry.
+"""
+
+
+def add_parser(commands: argparse._SubParsersAction[argparse.ArgumentParser]) -> None:
+    """Add the options of this command."""
+    parser = commands.add_parser(
+        "pulse",
+        help="photon flux against phase and energy, or expected counts",
+        description="Photon flux at the observer against phase and energy, without the column; or, "
+        "with an instrument and one exposure, expected counts in phase bins and channels.",
+        epilog=_EPILOG,
+    )
+    add_target(parser)
+    parser.add_argument(
+        "--energies",
+        action=Once,
+        metavar="LIST",
+        help=f'photon energies (default "{DEFAULT_ENERGIES}"); not with -i',
+    )
+    parser.add_argument(
+        "--phases",
+        action=Once,
+        metavar="N",
+        help=f"phase bins (default {DEFAULT_PHASES}, with -i those of the instrument)",
+    )
+    add_instrument(parser)
+    parser.add_argument(
+        "--exposure", action=Once, metavar="TIME", help="with -i: one exposure, such as 300ks"
+    )
+    add_draws(parser)
+    add_delivery(parser, ("text", "json"))
+    parser.set_defaults(run=run)
+
+
+def run(arguments: argparse.Namespace) -> None:
+    """Read the input, compute the pulse, write it."""
+    import exptime
+
+    gathering = Gathering()
+    gathering.read("--output", refuse_output, arguments.output, arguments.target)
+    gathering.read("", _refuse_mixture, arguments)
+    drawing = {
+        "draws": gathering.read("--draws", read_whole, arguments.draws, 8, 100_000),
+        "seed": gathering.read("--seed", read_whole, arguments.seed, 0, 2**63 - 1),
+        "jobs": gathering.read("--jobs", read_whole, arguments.jobs, 1, 1024),
+    }
+    target = gathering.read("TARGET", exptime.read_target, arguments.target)
+    phases = gathering.read("--phases", read_whole, arguments.phases or DEFAULT_PHASES, 4, 1024)
+    result: Any
+    options: dict[str, Any] = {}
+    if arguments.instrument is None:
+        written = DEFAULT_ENERGIES if arguments.energies is None else arguments.energies
+        energies = gathering.read("--energies", read_energies, written)
+        gathering.finish()
+        compute, inputs = exptime.pulse, (target.value,)
+        options = {"energies": energies.value, "phases": phases.value}
+    else:
+        instrument = gathering.read("-i", exptime.read_instrument, arguments.instrument)
+        exposure = gathering.read("--exposure", read_exposure, arguments.exposure or "")
+        gathering.finish()
+        compute, inputs = exptime.expected_counts, (target.value, instrument.value, exposure.value)
+        options = {"phases": phases.value} if arguments.phases else {}
+    options |= {name: reading.value for name, reading in drawing.items()}
+    with progress_bar("Geometries", is_quiet=arguments.quiet) as progress:
+        result = compute(*inputs, fixed_star=arguments.fixed_star, progress=progress, **options)
+    deliver(result, arguments.format, arguments.output, is_quiet=arguments.quiet)
+
+
+def _refuse_mixture(arguments: argparse.Namespace) -> None:
+    """Raise where options of the two kinds of pulse are mixed."""
+    if arguments.instrument is None and arguments.exposure is not None:
+        raise InputError(Fault("--exposure needs an instrument.", "", "Add -i INSTRUMENT."))
+    if arguments.instrument is not None and arguments.energies is not None:
+        what = "--energies has no meaning with -i: the channels of the instrument stand."
+        raise InputError(Fault(what, "", "Leave one of them out."))
+    if arguments.instrument is not None and arguments.exposure is None:
+        raise InputError(Fault("-i needs one exposure.", "", "Add for example --exposure 300ks."))

@@ -1,0 +1,70 @@
+"""The command ``start``: write a target file to begin with."""
+
+from __future__ import annotations
+
+import argparse
+import json
+from typing import Final
+
+from exptime.cli.arguments import Once
+from exptime.cli.delivery import deliver_text
+from exptime.cli.options import read_file_name
+
+_EPILOG: Final = """\
+example:
+  exptime start "Candidate A"
+  exptime start demo --output proposals/demo.yaml
+"""
+
+
+def add_parser(commands: argparse._SubParsersAction[argparse.ArgumentParser]) -> None:
+    """Add the options of this command."""
+    parser = commands.add_parser(
+        "start",
+        help="write a commented target file that runs as it is",
+        description="Write NAME.yaml, a commented target file of an invented star that runs as it "
+        "is. Replace its numbers by yours.",
+        epilog=_EPILOG,
+    )
+    parser.add_argument("name", metavar="NAME", help="name of the target, and of its file")
+    parser.add_argument(
+        "--force", action="store_true", help="replace the file if it exists already"
+    )
+    parser.add_argument(
+        "--output", action=Once, metavar="FILE", help="target file to write (default NAME.yaml)"
+    )
+    parser.add_argument(
+        "--format",
+        action=Once,
+        choices=("text", "json"),
+        default="text",
+        help="of the message that follows (default text)",
+    )
+    parser.set_defaults(run=run)
+
+
+def run(arguments: argparse.Namespace) -> None:
+    """Write the file, then say what to run next."""
+    import exptime
+    from exptime.documents.writing import refuse_unwritable, write_text
+
+    path = arguments.output or f"{read_file_name(arguments.name)}.yaml"
+    if path == "-":
+        deliver_text(exptime.starter_target(arguments.name), None)
+        return
+    refuse_unwritable(path, overwrite=arguments.force)
+    write_text(path, exptime.starter_target(arguments.name), overwrite=arguments.force)
+    commands = [f"exptime check {_quoted(path)}", f"exptime forecast {_quoted(path)} -i {{}}"]
+    commands[1] = commands[1].format(exptime.list_instruments()[0].id)
+    if arguments.format == "json":
+        deliver_text(json.dumps({"file": path, "next": commands}, ensure_ascii=False), None)
+    elif not arguments.quiet:
+        lines = [f"Wrote {path}, an invented star: replace its numbers by yours.", "Next:"]
+        deliver_text("\n".join([*lines, *(f"  {command}" for command in commands)]), None)
+
+
+def _quoted(path: str) -> str:
+    """Return a path as a shell takes it."""
+    import shlex
+
+    return shlex.quote(path)
