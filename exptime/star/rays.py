@@ -21,6 +21,8 @@ Beloborodov 2006, MNRAS 373, 836 (delay); the substitutions are derived here.
 
 from __future__ import annotations
 
+from functools import cache
+
 import numpy as np
 
 from exptime.arrays import Floats
@@ -140,6 +142,7 @@ def _inward_nodes(
     return depth, x, weight, np.where(g > 0.0, g, np.nan), w
 
 
+@cache
 def _unit_nodes() -> tuple[Floats, Floats]:
     x, weight = np.polynomial.legendre.leggauss(_NODES)
     return 0.5 * (x + 1.0), 0.5 * weight
