@@ -35,11 +35,11 @@ def write_bytes(path: str, content: bytes, *, overwrite: bool = True) -> None:
     WriteError
         When writing fails; an existing file is untouched then.
     """
+    refuse_unwritable(path, overwrite=overwrite)
     target = Path(path)
     if target.is_symlink():
         # Replace what the link points to, not the link.
         target = Path(os.path.realpath(target))
-    refuse_unwritable(path, overwrite=overwrite)
     temporary: str | None = None
     try:
         mode = target.stat().st_mode & 0o777 if target.exists() else 0o666 & ~_umask()
@@ -85,7 +85,8 @@ def refuse_unwritable(path: str, *, overwrite: bool = True) -> None:
     except (OSError, ValueError) as error:
         if isinstance(error, InputError):
             raise
-        raise InputError(Fault(f"the path cannot be used: {error}.", path[:200])) from None
+        reason = getattr(error, "strerror", None) or str(error)
+        raise InputError(Fault(f"the path cannot be used: {reason}.", path[:200])) from None
 
 
 def _exists(path: str) -> InputError:
