@@ -99,7 +99,7 @@ def read_list(text: str, unit: str, example: str) -> tuple[float, ...]:
         written = re.fullmatch(r"\s*([+-]?[\d.]+(?:[eE][+-]?\d+)?)\s*(.*?)\s*", piece)
         if written is not None:
             following = written[2] or following
-            piece = f"{written[1]} {following}"
+            piece = f"{written[1]} {following}".strip()
         numbers.append(read_quantity(piece, unit, example=example))
     return tuple(reversed(numbers))
 
