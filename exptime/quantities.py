@@ -223,14 +223,14 @@ def _factor(given: str, text: str, wanted: str, remedy: str, is_temperature: boo
         near = difflib.get_close_matches(given, _COMMON_UNITS, n=1, cutoff=0.5)
         hint = f"Did you mean {near[0]}? {remedy}" if near else remedy
         raise UnitsError(Fault(f"the unit in {text!r} is not known.", "", hint)) from None
-    unit_wanted = _unit(wanted)
+    unit_wanted = as_wanted = _unit(wanted)
     if not _has_counts(unit_given) and _has_counts(unit_wanted):
         unit_wanted = _without_counts(unit_wanted)
     try:
         equivalencies = units.temperature_energy() if is_temperature else []
         return float(unit_given.to(unit_wanted, equivalencies=equivalencies))
     except units.UnitConversionError:
-        kinds = f"{_kind(unit_given)}, not {_kind(unit_wanted)}"
+        kinds = f"{_kind(unit_given)}, not {_kind(as_wanted)}"
         raise UnitsError(Fault(f"{text!r} is {kinds}.", "", remedy)) from None
     except (units.UnitTypeError, TypeError, ArithmeticError):
         what = f"the unit in {text!r} cannot be used here."

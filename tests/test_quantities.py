@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import contextlib
 import math
 
 import numpy as np
@@ -121,14 +122,9 @@ def test_bad_range_is_refused(text: str) -> None:
 def test_any_text_gives_a_finite_number_or_an_input_error(text: str) -> None:
     """Nothing else is ever raised."""
     for unit in ("keV", ""):
-        try:
-            assert math.isfinite(read_quantity(text, unit))
-        except InputError as error:
-            assert error.faults[0].what
-        try:
-            assert all(map(math.isfinite, read_range(text, unit)))
-        except InputError as error:
-            assert error.faults[0].what
+        for read in (read_quantity, read_range):
+            with contextlib.suppress(InputError):
+                assert np.all(np.isfinite(read(text, unit)))
 
 
 @given(st.floats(1e-30, 1e30), st.sampled_from(["keV", "km", "pc", "rad", "Msun", ""]))

@@ -76,6 +76,9 @@ def refuse_unwritable(path: str, *, overwrite: bool = True) -> None:
     """
     target = Path(path)
     try:
+        # Unlike is_dir this raises for paths that no file can have.
+        with contextlib.suppress(FileNotFoundError, NotADirectoryError):
+            target.lstat()
         if target.is_dir():
             raise InputError(Fault("this is a folder, not a file.", path, "Name a file."))
         if not target.parent.is_dir():
