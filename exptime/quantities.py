@@ -10,6 +10,7 @@ import difflib
 import math
 import re
 import warnings
+from collections.abc import Iterable
 from typing import TYPE_CHECKING, Final
 
 from exptime.errors import Fault, InputError, UnitsError
@@ -81,6 +82,9 @@ def read_quantity(
         raise InputError(Fault(f"a text of {len(text)} characters is no quantity.", "", remedy))
     if _NOT_FINITE.fullmatch(text):
         raise InputError(Fault(f"{text!r} is not a finite number.", "", remedy))
+    if "±" in text or "+/-" in text or "+-" in text:
+        what = f"{text!r} holds an uncertainty."
+        raise InputError(Fault(what, "", "Give it apart: {value: …, uncertainty: …}."))
     found = _QUANTITY.fullmatch(text)
     if not found:
         raise InputError(Fault(f"{text!r} does not start with a number.", "", remedy))
@@ -162,6 +166,30 @@ def from_quantity(value: object, unit: str, name: str, *, is_temperature: bool =
         return _convert(plain, given_text, str(value), unit, remedy, is_temperature)
     except InputError as error:
         raise type(error)(Fault(f.what, name, f.remedy) for f in error.faults) from None
+
+
+def from_quantities(value: object, unit: str, name: str) -> tuple[float, ...]:
+    """Return an array Quantity, or one or several of what `from_quantity` takes, as floats.
+
+    Parameters
+    ----------
+    value : astropy.units.Quantity, str, number or iterable of them
+        At least one.
+    unit, name : str
+        As `from_quantity`.
+
+    Raises
+    ------
+    UnitsError, InputError
+        As `from_quantity`.
+    """
+    is_single = isinstance(value, str) or getattr(value, "shape", None) == ()
+    if is_single or not isinstance(value, Iterable):
+        return (from_quantity(value, unit, name),)
+    numbers = tuple(from_quantity(each, unit, name) for each in value)
+    if not numbers:
+        raise InputError(Fault("at least one value is wanted.", name, "The list is empty."))
+    return numbers
 
 
 def to_quantity(value: object, unit: str) -> Quantity:

@@ -13,6 +13,7 @@ from hypothesis import strategies as st
 
 from exptime.errors import InputError, UnitsError
 from exptime.quantities import (
+    from_quantities,
     from_quantity,
     read_quantity,
     read_range,
@@ -157,3 +158,33 @@ def test_unit_factor_of_another_kind_is_refused() -> None:
     assert unit_factor("photons", "ph") == 1.0
     with pytest.raises(UnitsError):
         unit_factor("keV", "cm2")
+
+
+@pytest.mark.parametrize(
+    "value",
+    [
+        [0.1, 1.0] * units.Ms,
+        ["100 ks", "1 Ms"],
+        (1e5 * units.s, "1 Ms"),
+    ],
+)
+def test_several_quantities_become_floats(value: object) -> None:
+    """An array with a unit, texts, or a mixture."""
+    assert from_quantities(value, "s", "exposures") == pytest.approx((1e5, 1e6), rel=1e-14)
+
+
+def test_one_quantity_is_several_of_one() -> None:
+    """A text is not taken letter by letter."""
+    assert from_quantities("1 Ms", "s", "exposures") == (1e6,)
+    assert from_quantities(1 * units.ks, "s", "exposures") == (1e3,)
+    for value in ([], [1.0], [1 * units.km], 5):
+        with pytest.raises(InputError, match=r"^exposures: "):
+            from_quantities(value, "s", "exposures")
+
+
+@pytest.mark.parametrize("text", ["1.4 ± 0.1 Msun", "1.4 +/- 0.1 Msun", "1.4+-0.1 Msun"])
+def test_uncertainty_inside_a_value_is_sent_to_its_key(text: str) -> None:
+    """The remedy shows the form in braces."""
+    with pytest.raises(InputError) as caught:
+        read_quantity(text, "Msun")
+    assert "uncertainty: …" in caught.value.faults[0].remedy

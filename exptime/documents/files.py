@@ -32,12 +32,26 @@ def read_bytes(path: str, limit: int) -> bytes:
     InputError
         When the file is missing, a folder, unreadable or too large.
     """
+    content = first_bytes(path, limit + 1)
+    if len(content) > limit:
+        what = f"the file is larger than {limit / 1e6:g} MB."
+        raise InputError(Fault(what, path, "Is it the right file?"))
+    return content
+
+
+def first_bytes(path: str, count: int) -> bytes:
+    """Return at most so many bytes from the beginning of a file.
+
+    Raises
+    ------
+    InputError
+        When the file is missing, a folder or unreadable.
+    """
     try:
         if path == STANDARD_INPUT:
-            content = sys.stdin.buffer.read(limit + 1)
-        else:
-            with Path(path).open("rb") as file:
-                content = file.read(limit + 1)
+            return sys.stdin.buffer.read(count)
+        with Path(path).open("rb") as file:
+            return file.read(count)
     except FileNotFoundError:
         raise InputError(Fault("there is no such file.", path, "Check the path.")) from None
     except IsADirectoryError:
@@ -45,10 +59,6 @@ def read_bytes(path: str, limit: int) -> bytes:
     except (OSError, ValueError) as error:
         reason = getattr(error, "strerror", None) or str(error)
         raise InputError(Fault(f"the file cannot be read: {reason}.", path)) from None
-    if len(content) > limit:
-        what = f"the file is larger than {limit / 1e6:g} MB."
-        raise InputError(Fault(what, path, "Is it the right file?"))
-    return content
 
 
 def decode(content: bytes, file: str) -> str:

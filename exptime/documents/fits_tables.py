@@ -10,7 +10,7 @@ import numpy as np
 
 from exptime.documents.columns import RawColumn, Table, Wanted, choose_columns
 from exptime.documents.faults import Faults
-from exptime.documents.files import LARGEST_FITS, read_bytes, unzip
+from exptime.documents.files import LARGEST_FITS, first_bytes, read_bytes, unzip
 from exptime.errors import InputError
 
 if TYPE_CHECKING:
@@ -31,7 +31,7 @@ def is_fits(path: str) -> bool:
     name = path.lower()
     if name.endswith((".fits", ".fit", ".fits.gz", ".arf", ".rmf", ".pha", ".arf.gz")):
         return True
-    begin = read_bytes(path, LARGEST_FITS)[: len(_MAGIC)]
+    begin = first_bytes(path, len(_MAGIC))
     return begin == _MAGIC or begin.startswith(_GZIP)
 
 

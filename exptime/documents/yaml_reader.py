@@ -16,7 +16,7 @@ from exptime.documents.nodes import Mapping, Node, Place, Scalar, Sequence
 from exptime.errors import Fault, InputError
 
 DEEPEST: Final = 20
-MOST_EVENTS: Final = 50_000
+MOST_EVENTS: Final = 20_000
 """Bounds the time of the pure-Python parser; no honest file comes near."""
 
 
