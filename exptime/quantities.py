@@ -176,12 +176,7 @@ def from_quantities(value: object, unit: str, name: str) -> tuple[float, ...]:
     value : astropy.units.Quantity, str, number or iterable of them
         At least one.
     unit, name : str
-        As `from_quantity`.
-
-    Raises
-    ------
-    UnitsError, InputError
-        As `from_quantity`.
+        As `from_quantity`, which tells the errors too.
     """
     is_single = isinstance(value, str) or getattr(value, "shape", None) == ()
     if is_single or not isinstance(value, Iterable):
