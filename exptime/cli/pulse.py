@@ -3,10 +3,12 @@
 from __future__ import annotations
 
 import argparse
-from typing import Any, Final
+from collections.abc import Callable
+from functools import partial
+from typing import Final
 
 from exptime.cli.arguments import Once, add_delivery, add_draws, add_instrument, add_target
-from exptime.cli.delivery import deliver, refuse_output
+from exptime.cli.delivery import Result, deliver, refuse_output
 from exptime.cli.gathering import Gathering
 from exptime.cli.options import read_energies, read_exposure, read_whole
 from exptime.cli.progress_bar import progress_bar
@@ -14,6 +16,8 @@ from exptime.errors import Fault, InputError
 
 DEFAULT_ENERGIES: Final = "0.3,0.5,1,2 keV"
 DEFAULT_PHASES: Final = "32"
+MISSING_EXPOSURE: Final = "1 s"
+"""Stands where none was given, which is a fault of its own."""
 
 _EPILOG: Final = """\
 example:
@@ -57,36 +61,55 @@ def add_parser(commands: argparse._SubParsersAction[argparse.ArgumentParser]) ->
 
 def run(arguments: argparse.Namespace) -> None:
     """Read the input, compute the pulse, write it."""
-    import exptime
-
     gathering = Gathering()
     gathering.read("--output", refuse_output, arguments.output, arguments.target)
     gathering.read("", _refuse_mixture, arguments)
-    drawing = {
-        "draws": gathering.read("--draws", read_whole, arguments.draws, 8, 100_000),
-        "seed": gathering.read("--seed", read_whole, arguments.seed, 0, 2**63 - 1),
-        "jobs": gathering.read("--jobs", read_whole, arguments.jobs, 1, 1024),
-    }
-    target = gathering.read("TARGET", exptime.read_target, arguments.target)
-    phases = gathering.read("--phases", read_whole, arguments.phases or DEFAULT_PHASES, 4, 1024)
-    result: Any
-    options: dict[str, Any] = {}
-    if arguments.instrument is None:
-        written = DEFAULT_ENERGIES if arguments.energies is None else arguments.energies
-        energies = gathering.read("--energies", read_energies, written)
-        gathering.finish()
-        compute, inputs = exptime.pulse, (target.value,)
-        options = {"energies": energies.value, "phases": phases.value}
-    else:
-        instrument = gathering.read("-i", exptime.read_instrument, arguments.instrument)
-        exposure = gathering.read("--exposure", read_exposure, arguments.exposure or "")
-        gathering.finish()
-        compute, inputs = exptime.expected_counts, (target.value, instrument.value, exposure.value)
-        options = {"phases": phases.value} if arguments.phases else {}
-    options |= {name: reading.value for name, reading in drawing.items()}
+    draws = gathering.read("--draws", read_whole, arguments.draws, 8, 100_000)
+    seed = gathering.read("--seed", read_whole, arguments.seed, 0, 2**63 - 1)
+    jobs = gathering.read("--jobs", read_whole, arguments.jobs, 1, 1024)
+    question = _flux if arguments.instrument is None else _counts
+    compute = question(arguments, gathering)
     with progress_bar("Geometries", is_quiet=arguments.quiet) as progress:
-        result = compute(*inputs, fixed_star=arguments.fixed_star, progress=progress, **options)
+        result = compute(
+            draws=draws.value,
+            seed=seed.value,
+            jobs=jobs.value,
+            fixed_star=arguments.fixed_star,
+            progress=progress,
+        )
     deliver(result, arguments.format, arguments.output, is_quiet=arguments.quiet)
+
+
+def _flux(arguments: argparse.Namespace, gathering: Gathering) -> Callable[..., Result]:
+    """Return the call that computes photon flux, once everything is read."""
+    import exptime
+
+    written = DEFAULT_ENERGIES if arguments.energies is None else arguments.energies
+    energies = gathering.read("--energies", read_energies, written)
+    phases = gathering.read("--phases", read_whole, arguments.phases or DEFAULT_PHASES, 4, 1024)
+    target = gathering.read("TARGET", exptime.read_target, arguments.target)
+    gathering.finish()
+    return partial(exptime.pulse, target.value, energies=energies.value, phases=phases.value)
+
+
+def _counts(arguments: argparse.Namespace, gathering: Gathering) -> Callable[..., Result]:
+    """Return the call that computes expected counts, once everything is read."""
+    import exptime
+
+    exposure = gathering.read("--exposure", read_exposure, arguments.exposure or MISSING_EXPOSURE)
+    target = gathering.read("TARGET", exptime.read_target, arguments.target)
+    instrument = gathering.read("-i", exptime.read_instrument, arguments.instrument)
+    options = {}
+    if arguments.phases is not None:
+        options["phases"] = gathering.read("--phases", read_whole, arguments.phases, 4, 1024)
+    gathering.finish()
+    return partial(
+        exptime.expected_counts,
+        target.value,
+        instrument.value,
+        exposure.value,
+        **{name: reading.value for name, reading in options.items()},
+    )
 
 
 def _refuse_mixture(arguments: argparse.Namespace) -> None:
