@@ -18,6 +18,8 @@ def write_text(path: str, text: str, *, overwrite: bool = True) -> None:
 def write_bytes(path: str, content: bytes, *, overwrite: bool = True) -> None:
     """Write a file by way of a temporary neighbour, so that it is never half-written.
 
+    Devices and pipes are written straight.
+
     Parameters
     ----------
     path : str
@@ -37,6 +39,9 @@ def write_bytes(path: str, content: bytes, *, overwrite: bool = True) -> None:
     """
     refuse_unwritable(path, overwrite=overwrite)
     target = Path(path)
+    if target.exists() and not target.is_file():
+        _write_through(target, content)
+        return
     if target.is_symlink():
         # Replace what the link points to, not the link.
         target = Path(os.path.realpath(target))
@@ -64,6 +69,17 @@ def write_bytes(path: str, content: bytes, *, overwrite: bool = True) -> None:
         if temporary is not None:
             with contextlib.suppress(OSError):
                 os.unlink(temporary)
+
+
+def _write_through(target: Path, content: bytes) -> None:
+    """Write to a device or pipe, such as /dev/null, which must not be replaced by a file."""
+    try:
+        with target.open("wb") as stream:
+            stream.write(content)
+    except BrokenPipeError:
+        raise
+    except OSError as error:
+        raise WriteError(f"{target} could not be written: {error.strerror or error}") from error
 
 
 def refuse_unwritable(path: str, *, overwrite: bool = True) -> None:

@@ -99,3 +99,16 @@ def test_impossible_paths_are_told_before_the_work(tmp_path: Path) -> None:
             write_text(path, "x")
     refuse_unwritable(str(tmp_path / "a.txt"), overwrite=False)
     assert os.listdir(tmp_path) == []
+
+
+def test_a_pipe_is_written_to_and_not_replaced(tmp_path: Path) -> None:
+    """A device such as /dev/null must never become a plain file."""
+    pipe = tmp_path / "pipe"
+    os.mkfifo(pipe)
+    reader = os.open(pipe, os.O_RDONLY | os.O_NONBLOCK)
+    try:
+        write_text(str(pipe), "text")
+        assert os.read(reader, 10) == b"text"
+    finally:
+        os.close(reader)
+    assert pipe.is_fifo()
