@@ -6,8 +6,6 @@ import argparse
 from typing import Final
 
 from exptime.cli.arguments import add_delivery, add_instrument, add_target
-from exptime.cli.delivery import deliver, refuse_output
-from exptime.cli.gathering import Gathering
 
 _EPILOG: Final = """\
 example:
@@ -34,9 +32,12 @@ def add_parser(commands: argparse._SubParsersAction[argparse.ArgumentParser]) ->
 def run(arguments: argparse.Namespace) -> None:
     """Read both files and show what was understood."""
     import exptime
+    from exptime.cli.delivery import deliver, refuse_output
+    from exptime.cli.gathering import Gathering
 
     gathering = Gathering()
-    gathering.read("--output", refuse_output, arguments.output, arguments.target)
+    inputs = (arguments.target, arguments.instrument)
+    gathering.read("--output", refuse_output, arguments.output, *inputs)
     target = gathering.read("TARGET", exptime.read_target, arguments.target)
     instrument = None
     if arguments.instrument is not None:

@@ -4,11 +4,8 @@ from __future__ import annotations
 
 import os
 import sys
-import traceback
 from collections.abc import Sequence
 from typing import Final
-
-from exptime.errors import ExptimeError, InputError
 
 DONE: Final = 0
 FAILED: Final = 1
@@ -17,7 +14,7 @@ INTERRUPTED: Final = 130
 
 
 def run_guarded(argv: Sequence[str]) -> int:
-    """Run a command and return its exit status; nothing but SystemExit of help is let through.
+    """Run a command and return its exit status, whatever happens.
 
     Parameters
     ----------
@@ -27,18 +24,23 @@ def run_guarded(argv: Sequence[str]) -> int:
     from exptime.cli.parser import run
 
     try:
-        run(argv)
+        try:
+            run(argv)
+        except SystemExit as stop:
+            # argparse ends this way after --help and --version.
+            if stop.code:
+                raise
         sys.stdout.flush()
-    except SystemExit as stop:
-        # argparse ends this way after --help and --version.
-        return _flushed(stop.code if isinstance(stop.code, int) else DONE)
     except BrokenPipeError:
-        return _reader_left()
+        _give_up_output()
+        return FAILED
     except KeyboardInterrupt:
         print("exptime: interrupted", file=sys.stderr)
         return INTERRUPTED
     except Exception as error:  # noqa: BLE001  the last resort: say it in one line
         if "--debug" in argv:
+            import traceback
+
             traceback.print_exc()
         return _explain(error)
     return DONE
@@ -46,6 +48,8 @@ def run_guarded(argv: Sequence[str]) -> int:
 
 def _explain(error: Exception) -> int:
     """Print what went wrong, each fault on its line, and return the exit status."""
+    from exptime.errors import ExptimeError, InputError
+
     if isinstance(error, InputError):
         for fault in error.faults:
             _say(str(fault))
@@ -59,6 +63,7 @@ def _explain(error: Exception) -> int:
     elif isinstance(error, OSError):
         name = f"{error.filename}: " if error.filename is not None else ""
         _say(f"{name}{error.strerror or error}")
+        _give_up_output()
     else:
         summary = next(iter(str(error).splitlines()), "")
         _say(f"internal error, {type(error).__name__}: {summary} (--debug shows where)")
@@ -78,20 +83,17 @@ def printable(text: str) -> str:
     )
 
 
-def _flushed(status: int) -> int:
-    """Return the status once standard output is written out."""
+def _give_up_output() -> None:
+    """Send what is left in standard output nowhere.
+
+    Its reader has ended, or its disk is full: else the interpreter tries to write it once more at
+    exit, and complains.
+    """
     try:
         sys.stdout.flush()
-    except BrokenPipeError:
-        return _reader_left()
-    return status
-
-
-def _reader_left() -> int:
-    """Stop quietly because the program that reads our output has ended."""
-    try:
-        # Else the interpreter tries to flush once more at exit and complains.
-        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
-    except (OSError, ValueError):
-        pass
-    return FAILED
+    except OSError:
+        nowhere = os.open(os.devnull, os.O_WRONLY)
+        os.dup2(nowhere, sys.stdout.fileno())
+        os.close(nowhere)
+    except ValueError:
+        return

@@ -6,10 +6,6 @@ import argparse
 from typing import Final
 
 from exptime.cli.arguments import Once, add_delivery, add_draws, add_instrument, add_target
-from exptime.cli.delivery import deliver, refuse_output
-from exptime.cli.gathering import Gathering
-from exptime.cli.options import read_exposures, read_goal, read_margin, read_whole
-from exptime.cli.progress_bar import progress_bar
 
 DEFAULT_EXPOSURES: Final = "100ks..3Ms"
 
@@ -63,9 +59,14 @@ def add_parser(commands: argparse._SubParsersAction[argparse.ArgumentParser]) ->
 def run(arguments: argparse.Namespace) -> None:
     """Read the input, forecast, write the report."""
     import exptime
+    from exptime.cli.delivery import deliver, refuse_output
+    from exptime.cli.gathering import Gathering
+    from exptime.cli.options import read_exposures, read_goal, read_margin, read_whole
+    from exptime.cli.progress_bar import progress_bar
 
     gathering = Gathering()
-    gathering.read("--output", refuse_output, arguments.output, arguments.target)
+    inputs = (arguments.target, arguments.instrument)
+    gathering.read("--output", refuse_output, arguments.output, *inputs)
     exposures = gathering.read("--exposure", read_exposures, arguments.exposure)
     goals = [gathering.read("--goal", read_goal, goal) for goal in arguments.goal]
     margin = gathering.read("--margin", read_margin, arguments.margin)

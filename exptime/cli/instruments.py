@@ -6,7 +6,6 @@ import argparse
 from typing import Final
 
 from exptime.cli.arguments import add_delivery
-from exptime.cli.delivery import deliver, refuse_output
 
 _EPILOG: Final = """\
 example:
@@ -31,6 +30,7 @@ def add_parser(commands: argparse._SubParsersAction[argparse.ArgumentParser]) ->
 def run(arguments: argparse.Namespace) -> None:
     """List them."""
     import exptime
+    from exptime.cli.delivery import deliver, refuse_output
 
     refuse_output(arguments.output)
     result = exptime.list_instruments()

@@ -3,14 +3,13 @@
 from __future__ import annotations
 
 import argparse
-import difflib
-import re
 from collections.abc import Sequence
-from importlib.metadata import PackageNotFoundError, version
-from typing import Any, Final, NoReturn
+from typing import TYPE_CHECKING, Any, Final, NoReturn
 
-from exptime.cli import check, forecast, instruments, process, pulse, start
-from exptime.errors import Fault, InputError
+from exptime.cli import check, forecast, instruments, pulse, start
+
+if TYPE_CHECKING:
+    from exptime.errors import Fault
 
 COMMANDS: Final = (start, instruments, check, pulse, forecast)
 
@@ -46,6 +45,8 @@ class Parser(argparse.ArgumentParser):
 
     def error(self, message: str) -> NoReturn:
         """Raise the message with a hint where help stands."""
+        from exptime.errors import Fault, InputError
+
         raise InputError(Fault(f"{_hinted(message)}.", "", f"See {self.prog} --help."))
 
     def known_options(self) -> list[str]:
@@ -53,10 +54,25 @@ class Parser(argparse.ArgumentParser):
         return [name for name in self._option_string_actions if name.startswith("--")]
 
 
+class Version(argparse.Action):
+    """Print the version of the installed package, which takes a while to look up."""
+
+    def __call__(self, parser: argparse.ArgumentParser, *_: object) -> NoReturn:
+        """Print and stop."""
+        from importlib.metadata import PackageNotFoundError, version
+
+        try:
+            number = version("exptime")
+        except PackageNotFoundError:
+            number = "(not installed)"
+        print(f"exptime {number}")
+        parser.exit()
+
+
 def build_parser() -> Parser:
     """Return the parser of the whole command line."""
     parser = Parser(prog="exptime", description=_DESCRIPTION, epilog=_EPILOG)
-    parser.add_argument("--version", action="version", version=f"exptime {_version()}")
+    parser.add_argument("--version", action=Version, nargs=0, help="show the version and exit")
     _add_common(parser, is_top=True)
     commands = parser.add_subparsers(dest="command", metavar="COMMAND", title="commands")
     for command in COMMANDS:
@@ -76,15 +92,15 @@ def run(argv: Sequence[str]) -> None:
     """
     parser = build_parser()
     arguments, unknown = parser.parse_known_args(argv)
+    if unknown:
+        _refuse(_command_parser(parser, arguments.command), unknown)
     if arguments.command is None:
-        if unknown:
-            raise InputError(_unknown_fault(parser, unknown))
         parser.print_help()
         return
-    if unknown:
-        raise InputError(_unknown_fault(_command_parser(parser, arguments.command), unknown))
     if not arguments.debug:
-        process.hide_library_warnings()
+        from exptime.cli.process import hide_library_warnings
+
+        hide_library_warnings()
     arguments.run(arguments)
 
 
@@ -99,17 +115,27 @@ def _add_common(parser: argparse.ArgumentParser, *, is_top: bool) -> None:
         group.add_argument(name, action="store_true", default=default, help=meaning)
 
 
-def _command_parser(parser: Parser, name: str) -> Parser:
-    """Return the parser of one command."""
+def _command_parser(parser: Parser, name: str | None) -> Parser:
+    """Return the parser of one command, or of the program where none is named."""
     for action in parser._actions:
-        if isinstance(action, argparse._SubParsersAction):
+        if name is not None and isinstance(action, argparse._SubParsersAction):
             return action.choices[name]  # type: ignore[no-any-return]  # a table of parsers
     return parser
 
 
-def _unknown_fault(parser: Parser, unknown: Sequence[str]) -> Fault:
-    """Return what is wrong with arguments that no option took."""
-    first = unknown[0]
+def _refuse(parser: Parser, unknown: Sequence[str]) -> NoReturn:
+    """Raise for arguments that no option took."""
+    from exptime.errors import InputError
+
+    raise InputError(_unknown_fault(parser, unknown[0]))
+
+
+def _unknown_fault(parser: Parser, first: str) -> Fault:
+    """Return what is wrong with an argument that no option took."""
+    import difflib
+
+    from exptime.errors import Fault
+
     if not first.startswith("-"):
         remedy = 'Put a value that contains spaces in quotation marks: --goal "radius 5 %".'
         return Fault(f"{first!r} belongs to no option.", "", remedy)
@@ -121,6 +147,9 @@ def _unknown_fault(parser: Parser, unknown: Sequence[str]) -> Fault:
 
 def _hinted(message: str) -> str:
     """Return a message of argparse in our words, with the nearest valid name."""
+    import difflib
+    import re
+
     found = re.fullmatch(r"argument (.+?): invalid choice: '(.*?)' \(choose from (.*)\)", message)
     if not found:
         return message
@@ -130,11 +159,3 @@ def _hinted(message: str) -> str:
     hint = f"; did you mean {near[0]}" if near else ""
     kind = "command" if name == "COMMAND" else name
     return f"{kind} {given!r} is none of {', '.join(choices)}{hint}"
-
-
-def _version() -> str:
-    """Return the version of the installed package."""
-    try:
-        return version("exptime")
-    except PackageNotFoundError:
-        return "(not installed)"

@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import os
 import sys
-import warnings
 from typing import Final
 
 _THREAD_VARIABLES: Final = (
@@ -25,6 +24,10 @@ def prepare_process() -> None:
     """
     for variable in _THREAD_VARIABLES:
         os.environ.setdefault(variable, "1")
+    for name in ("stdout", "stderr"):
+        # A closed stream is None; what is written for nobody goes nowhere.
+        if getattr(sys, name) is None:
+            setattr(sys, name, open(os.devnull, "w", encoding="utf-8"))
     for stream in (sys.stdout, sys.stderr):
         reconfigure = getattr(stream, "reconfigure", None)
         if reconfigure is not None:
@@ -35,5 +38,7 @@ def prepare_process() -> None:
 
 def hide_library_warnings() -> None:
     """Keep warnings of the packages underneath away from users; ``-W`` brings them back."""
+    import warnings
+
     if not sys.warnoptions:
         warnings.simplefilter("ignore")

@@ -3,16 +3,15 @@
 from __future__ import annotations
 
 import argparse
-from collections.abc import Callable
-from functools import partial
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 from exptime.cli.arguments import Once, add_delivery, add_draws, add_instrument, add_target
-from exptime.cli.delivery import Result, deliver, refuse_output
-from exptime.cli.gathering import Gathering
-from exptime.cli.options import read_energies, read_exposure, read_whole
-from exptime.cli.progress_bar import progress_bar
-from exptime.errors import Fault, InputError
+
+if TYPE_CHECKING:
+    from collections.abc import Callable
+
+    from exptime.cli.delivery import Result
+    from exptime.cli.gathering import Gathering
 
 DEFAULT_ENERGIES: Final = "0.3,0.5,1,2 keV"
 DEFAULT_PHASES: Final = "32"
@@ -61,8 +60,14 @@ def add_parser(commands: argparse._SubParsersAction[argparse.ArgumentParser]) ->
 
 def run(arguments: argparse.Namespace) -> None:
     """Read the input, compute the pulse, write it."""
+    from exptime.cli.delivery import deliver, refuse_output
+    from exptime.cli.gathering import Gathering
+    from exptime.cli.options import read_whole
+    from exptime.cli.progress_bar import progress_bar
+
     gathering = Gathering()
-    gathering.read("--output", refuse_output, arguments.output, arguments.target)
+    inputs = (arguments.target, arguments.instrument)
+    gathering.read("--output", refuse_output, arguments.output, *inputs)
     gathering.read("", _refuse_mixture, arguments)
     draws = gathering.read("--draws", read_whole, arguments.draws, 8, 100_000)
     seed = gathering.read("--seed", read_whole, arguments.seed, 0, 2**63 - 1)
@@ -82,7 +87,10 @@ def run(arguments: argparse.Namespace) -> None:
 
 def _flux(arguments: argparse.Namespace, gathering: Gathering) -> Callable[..., Result]:
     """Return the call that computes photon flux, once everything is read."""
+    from functools import partial
+
     import exptime
+    from exptime.cli.options import read_energies, read_whole
 
     written = DEFAULT_ENERGIES if arguments.energies is None else arguments.energies
     energies = gathering.read("--energies", read_energies, written)
@@ -94,7 +102,10 @@ def _flux(arguments: argparse.Namespace, gathering: Gathering) -> Callable[..., 
 
 def _counts(arguments: argparse.Namespace, gathering: Gathering) -> Callable[..., Result]:
     """Return the call that computes expected counts, once everything is read."""
+    from functools import partial
+
     import exptime
+    from exptime.cli.options import read_exposure, read_whole
 
     exposure = gathering.read("--exposure", read_exposure, arguments.exposure or MISSING_EXPOSURE)
     target = gathering.read("TARGET", exptime.read_target, arguments.target)
@@ -114,6 +125,8 @@ def _counts(arguments: argparse.Namespace, gathering: Gathering) -> Callable[...
 
 def _refuse_mixture(arguments: argparse.Namespace) -> None:
     """Raise where options of the two kinds of pulse are mixed."""
+    from exptime.errors import Fault, InputError
+
     if arguments.instrument is None and arguments.exposure is not None:
         raise InputError(Fault("--exposure needs an instrument.", "", "Add -i INSTRUMENT."))
     if arguments.instrument is not None and arguments.energies is not None:

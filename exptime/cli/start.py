@@ -3,12 +3,9 @@
 from __future__ import annotations
 
 import argparse
-import json
 from typing import Final
 
 from exptime.cli.arguments import Once
-from exptime.cli.delivery import deliver_text
-from exptime.cli.options import read_file_name
 
 _EPILOG: Final = """\
 example:
@@ -45,7 +42,11 @@ def add_parser(commands: argparse._SubParsersAction[argparse.ArgumentParser]) ->
 
 def run(arguments: argparse.Namespace) -> None:
     """Write the file, then say what to run next."""
+    import json
+
     import exptime
+    from exptime.cli.delivery import deliver_text
+    from exptime.cli.options import read_file_name
     from exptime.documents.writing import refuse_unwritable, write_text
 
     path = arguments.output or f"{read_file_name(arguments.name)}.yaml"
