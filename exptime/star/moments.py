@@ -22,6 +22,7 @@ Morsink et al. 2007, ApJ 663, 1244; Bogdanov et al. 2019, ApJL 887, L26 (gamma i
 from __future__ import annotations
 
 import math
+from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import cache
 
@@ -29,7 +30,7 @@ import numpy as np
 
 from exptime.arrays import Complexes, Floats
 from exptime.constants import SPEED_OF_LIGHT_KM_S
-from exptime.star.circle import stack
+from exptime.star.circle import RingStack, stack
 from exptime.star.emission import angular_factor
 from exptime.star.ray_table import Bent
 from exptime.star.records import Emission, HotSpot, Star
@@ -156,25 +157,60 @@ def spot_moments(
     redshift_range : tuple of float, optional
         Interval of e to expand on; that of the spot itself when not given.
     """
-    rings = stack(spot.colatitude, spot.angular_radius, view.transitions, resolution.rings)
-    kernels = ring_kernels(view, emission, rings.colatitude, resolution.nodes)
+    return joint_moments(view, emission, (spot,), resolution, redshift_range)[0]
+
+
+def joint_moments(
+    view: View,
+    emission: Emission,
+    spots: Sequence[HotSpot],
+    resolution: Resolution,
+    redshift_range: Interval | None = None,
+) -> list[Moments]:
+    """Compute the moments of several spots at one resolution, on one redshift interval.
+
+    Parameters
+    ----------
+    view, emission, resolution, redshift_range
+        As for `spot_moments`; the interval is that of all spots when not given.
+    spots : sequence of HotSpot
+        The spots, each taken as if it were centred on longitude zero.
+    """
+    stacks = [
+        stack(spot.colatitude, spot.angular_radius, view.transitions, resolution.rings)
+        for spot in spots
+    ]
+    colatitude = np.concatenate([rings.colatitude for rings in stacks])
+    kernels = ring_kernels(view, emission, colatitude, resolution.nodes)
     harmonics, terms = resolution.harmonics, resolution.redshift_terms
     if kernels is None:
         empty = np.zeros((harmonics + 1, terms), complex)
-        return Moments(empty, redshift_range or (0.5, 2.0), True)
+        return [Moments(empty, redshift_range or (0.5, 2.0), True) for _ in spots]
     low, high = redshift_range or widened(
         (float(kernels.redshift.min()), float(kernels.redshift.max())), 1e-3
     )
     variable = (2.0 * kernels.redshift - (high + low)) / (high - low)
     basis = _chebyshev(variable, terms) * kernels.photons[..., None]
     waves = _powers(np.exp(-1j * kernels.azimuth), harmonics)
+    real = np.ascontiguousarray(waves.real) @ basis
+    imaginary = np.ascontiguousarray(waves.imag) @ basis
+    results, first = [], 0
+    for rings in stacks:
+        part = slice(first, first + len(rings.colatitude))
+        factor = _extent(rings, harmonics)
+        values = np.einsum("rm,rmj->mj", factor, real[part]) + 1j * np.einsum(
+            "rm,rmj->mj", factor, imaginary[part]
+        )
+        results.append(Moments(values, (low, high), not np.any(values)))
+        first = part.stop
+    return results
+
+
+def _extent(rings: RingStack, harmonics: int) -> Floats:
+    """Extent of each ring within the spot, 2 d sinc(m d), times its weight in colatitude."""
+    width = rings.half_width[:, None]
     order = np.arange(harmonics + 1)
-    # Extent of the ring within the spot: 2 d sinc(m d), and the weight in colatitude.
-    extent = 2.0 * rings.half_width[:, None] * np.sinc(order * rings.half_width[:, None] / np.pi)
-    factor = extent * rings.weight[:, None]
-    real = np.einsum("rm,rmj->mj", factor, np.ascontiguousarray(waves.real) @ basis)
-    imaginary = np.einsum("rm,rmj->mj", factor, np.ascontiguousarray(waves.imag) @ basis)
-    return Moments(real + 1j * imaginary, (low, high), False)
+    return np.asarray(2.0 * width * np.sinc(order * width / np.pi) * rings.weight[:, None])
 
 
 def widened(interval: Interval, share: float) -> Interval:

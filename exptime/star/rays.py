@@ -143,6 +143,7 @@ def _inward_nodes(
 
 
 @cache
+@cache
 def _unit_nodes() -> tuple[Floats, Floats]:
     x, weight = np.polynomial.legendre.leggauss(_NODES)
     return 0.5 * (x + 1.0), 0.5 * weight

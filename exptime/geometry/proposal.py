@@ -1,0 +1,121 @@
+"""Points in the unit cube: uniform ones, and ones crowded where earlier points fared well."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from exptime.arrays import Booleans, Floats
+
+_NARROWEST = 1e-3
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Kernels:
+    """A mixture of the uniform density on the unit cube with kernels about centres.
+
+    Parameters
+    ----------
+    centers : ndarray, shape (n_center, n_dim)
+        Centres in the cube; none makes the density uniform.
+    weights : ndarray, shape (n_center,)
+        Shares, summing to one.
+    widths : ndarray, shape (n_dim,)
+        Standard deviations of the normal kernels.
+    is_periodic : ndarray of bool, shape (n_dim,)
+        Axes that close on themselves; the others reflect at their ends.
+    uniform_share : float
+        Share of the uniform density.
+    """
+
+    centers: Floats
+    weights: Floats
+    widths: Floats
+    is_periodic: Booleans
+    uniform_share: float
+
+    def draw(self, count: int, random: np.random.Generator) -> Floats:
+        """Draw points, shape (count, n_dim)."""
+        dimensions = len(self.widths)
+        points = random.random((count, dimensions))
+        if len(self.centers) == 0:
+            return points
+        crowded = random.random(count) >= self.uniform_share
+        chosen = random.choice(len(self.centers), size=count, p=self.weights)
+        moved = self.centers[chosen] + self.widths * random.standard_normal((count, dimensions))
+        wrapped = np.where(self.is_periodic, moved % 1.0, 1.0 - np.abs(1.0 - moved % 2.0))
+        return np.where(crowded[:, None], wrapped, points)
+
+    def density(self, points: Floats) -> Floats:
+        """Return the density at points of shape (n, n_dim), shape (n,)."""
+        if len(self.centers) == 0:
+            return np.ones(len(points))
+        total = np.ones((len(points), len(self.centers)))
+        for axis, width in enumerate(self.widths):
+            x, center = points[:, axis, None], self.centers[None, :, axis]
+            total *= _images(x, center, float(width), bool(self.is_periodic[axis]))
+        kernel = total @ self.weights
+        return np.asarray(self.uniform_share + (1.0 - self.uniform_share) * kernel)
+
+
+def _images(x: Floats, center: Floats, width: float, is_periodic: bool) -> Floats:
+    """One-dimensional kernel with the images that periodicity or reflection brings in."""
+    shifts = (-1.0, 0.0, 1.0) if is_periodic else (-2.0, 0.0, 2.0)
+    sources = [center + shift for shift in shifts]
+    if not is_periodic:
+        sources += [shift - center for shift in shifts]
+    norm = 1.0 / (np.sqrt(2.0 * np.pi) * width)
+    return np.asarray(sum(np.exp(-0.5 * ((x - s) / width) ** 2) for s in sources) * norm)
+
+
+def uniform(is_periodic: Booleans) -> Kernels:
+    """Return the uniform density on the cube."""
+    dimensions = len(is_periodic)
+    return Kernels(
+        centers=np.empty((0, dimensions)),
+        weights=np.empty(0),
+        widths=np.ones(dimensions),
+        is_periodic=is_periodic,
+        uniform_share=1.0,
+    )
+
+
+def around(
+    points: Floats, weights: Floats, is_periodic: Booleans, uniform_share: float, most: int = 200
+) -> Kernels:
+    """Return kernels about the heaviest of weighted points.
+
+    Parameters
+    ----------
+    points : ndarray, shape (n, n_dim)
+        Points in the cube.
+    weights : ndarray, shape (n,)
+        Not negative; need not sum to one.
+    is_periodic : ndarray of bool, shape (n_dim,)
+        Axes that close on themselves.
+    uniform_share : float
+        Share of the uniform density.
+    most : int
+        Largest number of kernels.
+
+    Notes
+    -----
+    Width of each axis: that of a uniform axis or of the points, whichever is less, times
+    n_eff^(-1/(d+4)), the normal-reference rule of kernel density estimates (Silverman 1986).
+    """
+    order = np.argsort(weights)[::-1][:most]
+    order = order[weights[order] > 0.0]
+    share = weights[order] / weights[order].sum()
+    centers = points[order]
+    effective = 1.0 / float(np.sum(share**2))
+    spread = np.sqrt(share @ (centers - share @ centers) ** 2)
+    shrink = effective ** (-1.0 / (points.shape[1] + 4.0))
+    widths = np.clip(spread, _NARROWEST / shrink, 12.0**-0.5) * shrink
+    return Kernels(
+        centers=centers,
+        weights=share,
+        widths=widths,
+        is_periodic=is_periodic,
+        uniform_share=uniform_share,
+    )

@@ -1,0 +1,191 @@
+"""Search for geometries that reproduce flux and pulse, by draws that learn where to look.
+
+Points are drawn in rounds from the unit cube, first uniformly, then from a mixture of the uniform
+density and kernels about the best points so far. Each candidate weighs as its likelihood over the
+mixture of all rounds' densities, so that the weighted set stands for the prior times the
+likelihood whatever the proposals were.
+
+References
+----------
+Cappé et al. 2004, J. Comput. Graph. Stat. 13, 907 (population Monte Carlo); Veach & Guibas 1995
+(mixture of densities in the denominator); Neal 2001, Stat. Comput. 11, 125 (tempering).
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from functools import partial
+
+import numpy as np
+
+from exptime.arrays import Floats
+from exptime.errors import Fault, UnreachableError
+from exptime.geometry.candidates import Candidate, Search, evaluate
+from exptime.geometry.proposal import Kernels, around, uniform
+from exptime.geometry.resampling import effective_number, thin
+from exptime.parallel import Workers
+from exptime.progress import Progress, silent
+
+_FIRST_ROUND = 512
+_ROUND = 384
+_MOST_ROUNDS = 16
+_ENOUGH = 1.5
+_KERNELS_WANTED = 40.0
+_UNIFORM_SHARE = 0.2
+_SOFTEST = 1e-6
+_FAR_SIGMA = 4.0
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Geometries:
+    """Geometries chosen for the forecast.
+
+    Parameters
+    ----------
+    candidates : tuple of Candidate
+        In draw order.
+    weights : ndarray, shape (n,)
+        Summing to one.
+    tried : int
+        Points drawn in all.
+    accepted : int
+        Those that reproduced the flux.
+    """
+
+    candidates: tuple[Candidate, ...]
+    weights: Floats
+    tried: int
+    accepted: int
+
+
+def find_geometries(
+    search: Search,
+    count: int,
+    random: np.random.Generator,
+    team: Workers,
+    progress: Progress = silent,
+) -> Geometries:
+    """Find weighted geometries.
+
+    Parameters
+    ----------
+    search : Search
+        What is sought.
+    count : int
+        Number of geometries wanted.
+    random : numpy.random.Generator
+        Source of every random number.
+    team : Workers
+        Processes that evaluate the candidates.
+    progress : Progress
+        Told how far the effective number has come.
+
+    Raises
+    ------
+    UnreachableError
+        When no geometry gives the flux, or none comes within four standard deviations of a
+        pulsed fraction.
+    """
+    proposals: list[Kernels] = []
+    sizes: list[int] = []
+    points = np.empty((0, len(search.axes)))
+    found: list[Candidate | None] = []
+    wanted = _ENOUGH * count
+    weights = np.empty(0)
+    while len(proposals) < _MOST_ROUNDS:
+        proposal = _next_proposal(search, points, found, proposals, sizes)
+        size = _ROUND if proposals else _FIRST_ROUND
+        drawn = proposal.draw(size, random)
+        found += team.map(partial(evaluate, search), list(drawn), chunk=16)
+        points = np.concatenate([points, drawn])
+        proposals.append(proposal)
+        sizes.append(size)
+        weights = _weights(points, found, proposals, sizes, temper=1.0)
+        reached = effective_number(weights)
+        progress(min(int(reached), int(wanted)), int(wanted))
+        if reached >= wanted:
+            break
+    _refuse_unreachable(search, found)
+    indices, share = thin(weights, count, random)
+    chosen = [found[index] for index in indices]
+    return Geometries(
+        candidates=tuple(candidate for candidate in chosen if candidate is not None),
+        weights=share,
+        tried=len(found),
+        accepted=sum(candidate is not None for candidate in found),
+    )
+
+
+def _next_proposal(
+    search: Search,
+    points: Floats,
+    found: Sequence[Candidate | None],
+    proposals: Sequence[Kernels],
+    sizes: Sequence[int],
+) -> Kernels:
+    """Place kernels by the likelihood, softened until enough points carry weight."""
+    if not any(candidate is not None for candidate in found):
+        return uniform(search.is_periodic)
+    temper = 1.0
+    while (
+        temper > _SOFTEST
+        and effective_number(weights := _weights(points, found, proposals, sizes, temper))
+        < _KERNELS_WANTED
+    ):
+        temper *= 0.7
+    return around(points, weights, search.is_periodic, _UNIFORM_SHARE)
+
+
+def _weights(
+    points: Floats,
+    found: Sequence[Candidate | None],
+    proposals: Sequence[Kernels],
+    sizes: Sequence[int],
+    temper: float,
+) -> Floats:
+    """Return likelihood**temper over the density that the points were drawn from."""
+    likelihood = np.array(
+        [-np.inf if candidate is None else candidate.log_likelihood for candidate in found]
+    )
+    best = likelihood.max(initial=-np.inf)
+    if not np.isfinite(best):
+        return np.zeros(len(found))
+    density = sum(
+        size * proposal.density(points) for size, proposal in zip(sizes, proposals, strict=True)
+    ) / sum(sizes)
+    with np.errstate(invalid="ignore"):
+        relative = np.where(np.isfinite(likelihood), temper * (likelihood - best), -np.inf)
+    return np.asarray(np.exp(relative) / density)
+
+
+def _refuse_unreachable(search: Search, found: Sequence[Candidate | None]) -> None:
+    reached = [candidate.fractions for candidate in found if candidate is not None]
+    if not reached:
+        raise UnreachableError(
+            Fault(
+                f"No geometry of two spots among {len(found)} gives the flux of "
+                f"{search.target.name}.",
+                where=search.target.file,
+                remedy="A higher temperature, a smaller distance or a smaller flux would do.",
+            )
+        )
+    table = np.array(reached)
+    faults = []
+    for column, measured in enumerate(search.target.pulsed_fractions):
+        low, high = float(table[:, column].min()), float(table[:, column].max())
+        slack = _FAR_SIGMA * measured.uncertainty
+        if not low - slack <= measured.value <= high + slack:
+            band = f"{measured.band_kev[0]:g}-{measured.band_kev[1]:g} keV"
+            faults.append(
+                Fault(
+                    f"A pulsed fraction of {measured.value:g} ({measured.definition}, {band}) "
+                    f"cannot be reached: {len(reached)} geometries that give the flux span "
+                    f"{low:.3f} to {high:.3f}.",
+                    where=search.target.file,
+                    remedy="Check the definition and whether background was subtracted, or "
+                    "change inclination, temperature or distance.",
+                )
+            )
+    if faults:
+        raise UnreachableError(faults)
