@@ -201,9 +201,10 @@ def _by_colatitude(view: View, spot: HotSpot, moments: _MomentsOf, steps: Steps)
     values = []
     for sign in (1.0, -1.0):
         moved = spot.colatitude + sign * steps.colatitude
-        folded = np.pi - abs(np.pi - abs(moved))
+        is_beyond = not 0.0 <= moved <= np.pi
+        folded = np.pi - abs(np.pi - abs(moved)) if is_beyond else moved
         value = moments(view, replace(spot, colatitude=folded))
-        if folded != moved:
+        if is_beyond:
             value = value * longitude_factor(np.pi, len(value) - 1)[:, None]
         values.append(value)
     return np.asarray((values[0] - values[1]) / (2.0 * steps.colatitude))
