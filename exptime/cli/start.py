@@ -7,6 +7,9 @@ from typing import Final
 
 from exptime.cli.arguments import Once
 
+FIRST_INSTRUMENT: Final = "soft-concentrator"
+"""The shipped instrument that the message proposes."""
+
 _EPILOG: Final = """\
 example:
   exptime start "Candidate A"
@@ -43,29 +46,26 @@ def add_parser(commands: argparse._SubParsersAction[argparse.ArgumentParser]) ->
 def run(arguments: argparse.Namespace) -> None:
     """Write the file, then say what to run next."""
     import json
+    import shlex
 
     import exptime
     from exptime.cli.delivery import deliver_text
+    from exptime.cli.failures import printable
     from exptime.cli.options import read_file_name
-    from exptime.documents.writing import refuse_unwritable, write_text
+    from exptime.documents.writing import write_text
 
     path = arguments.output or f"{read_file_name(arguments.name)}.yaml"
+    text = exptime.starter_target(arguments.name)
     if path == "-":
-        deliver_text(exptime.starter_target(arguments.name), None)
+        deliver_text(text, None)
         return
-    refuse_unwritable(path, overwrite=arguments.force)
-    write_text(path, exptime.starter_target(arguments.name), overwrite=arguments.force)
-    commands = [f"exptime check {_quoted(path)}", f"exptime forecast {_quoted(path)} -i {{}}"]
-    commands[1] = commands[1].format(exptime.list_instruments()[0].id)
+    write_text(path, text, overwrite=arguments.force)
+    quoted = shlex.quote(path)
+    commands = (f"exptime check {quoted}", f"exptime forecast {quoted} -i {FIRST_INSTRUMENT}")
     if arguments.format == "json":
         deliver_text(json.dumps({"file": path, "next": commands}, ensure_ascii=False), None)
     elif not arguments.quiet:
-        lines = [f"Wrote {path}, an invented star: replace its numbers by yours.", "Next:"]
+        lines = (
+            f"Wrote {printable(path)}, an invented star: put your numbers in its place. Next:",
+        )
         deliver_text("\n".join([*lines, *(f"  {command}" for command in commands)]), None)
-
-
-def _quoted(path: str) -> str:
-    """Return a path as a shell takes it."""
-    import shlex
-
-    return shlex.quote(path)
