@@ -3,15 +3,14 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, field
-from typing import Literal
 
 from exptime.arrays import Floats
+from exptime.information.precision import QUANTITIES as QUANTITIES
+from exptime.information.precision import Quantity as QuantityName
 from exptime.instrument.records import Instrument
 from exptime.star.records import HotSpot, Star
 from exptime.target.records import Target
 
-QuantityName = Literal["mass", "radius", "compactness"]
-QUANTITIES: tuple[QuantityName, ...] = ("mass", "radius", "compactness")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -1,0 +1,140 @@
+"""Remake the table of interstellar absorption: ``python -m exptime.tables.absorption [FILE]``.
+
+Cross-section per hydrogen atom of neutral gas, atoms only: hydrogen exact (Stobbe 1930), helium
+by Yan, Sadeghpour & Dalgarno 1998 (ApJ 496, 1044; erratum 2001, ApJ 559, 1194), heavier atoms
+from the scattering factors of Henke, Gullikson & Davis 1993 (ADNDT 54, 181) as the package
+periodictable carries them. It is needed by this script and by tests alone.
+
+Abundances by number: Wilms, Allen & McCray 2000 (ApJ 542, 914, table 2), interstellar; Anders &
+Ebihara 1982 (Geochim. Cosmochim. Acta 46, 2363), solar.
+"""
+
+from __future__ import annotations
+
+import sys
+from pathlib import Path
+from typing import Final
+
+import numpy as np
+
+from exptime.arrays import Floats
+
+INTERSTELLAR: Final = {
+    "He": 10.99, "C": 8.38, "N": 7.88, "O": 8.69, "Ne": 7.94, "Na": 6.16, "Mg": 7.40, "Al": 6.33,
+    "Si": 7.27, "P": 5.42, "S": 7.09, "Cl": 5.12, "Ar": 6.41, "Ca": 6.20, "Ti": 4.81, "Cr": 5.51,
+    "Mn": 5.34, "Fe": 7.43, "Co": 4.92, "Ni": 6.05,
+}  # fmt: skip
+"""12 + log10 of the number per hydrogen atom."""
+
+SOLAR_1982: Final = {
+    "He": 8.01e-2, "C": 4.45e-4, "N": 9.12e-5, "O": 7.39e-4, "Ne": 1.38e-4, "Na": 2.10e-6,
+    "Mg": 3.95e-5, "Al": 3.12e-6, "Si": 3.68e-5, "P": 3.82e-7, "S": 1.89e-5, "Cl": 1.93e-7,
+    "Ar": 3.82e-6, "Ca": 2.25e-6, "Ti": 8.82e-8, "Cr": 4.93e-7, "Mn": 3.50e-7, "Fe": 3.31e-5,
+    "Co": 8.27e-8, "Ni": 1.81e-6,
+}  # fmt: skip
+"""Number per hydrogen atom."""
+
+HYDROGEN_EDGE_KEV: Final = 0.013598
+HELIUM_EDGE_KEV: Final = 0.02458
+LOWEST_KEV: Final = 0.03
+HIGHEST_KEV: Final = 30.0
+_SMOOTH_POINTS = 420
+_EDGE_GAP_KEV = 0.0003
+_EDGE_JUMP = 1.1
+_ELECTRON_RADIUS_CM = 2.8179403e-13
+_WAVELENGTH_CM_KEV = 12.398420e-8
+
+
+def hydrogen_cm2(energies_kev: Floats) -> Floats:
+    """Photoionisation cross-section of hydrogen, exact for one electron (Stobbe 1930), cm²."""
+    ratio = energies_kev / HYDROGEN_EDGE_KEV
+    eta = (ratio - 1.0) ** -0.5
+    shape = np.exp(4.0 - 4.0 * eta * np.arctan(1.0 / eta)) / -np.expm1(-2.0 * np.pi * eta)
+    return np.asarray(6.30431812e-18 * ratio**-4 * shape)
+
+
+def helium_cm2(energies_kev: Floats) -> Floats:
+    """Photoionisation cross-section of helium (Yan et al. 1998), cm²."""
+    x = energies_kev / HELIUM_EDGE_KEV
+    series = 1.0 + sum(
+        coefficient * x ** (-0.5 * order)
+        for order, coefficient in enumerate(
+            (-4.7416, 14.8200, -30.8678, 37.3584, -23.4585, 5.9133), start=1
+        )
+    )
+    return np.asarray(733e-24 * energies_kev**-3.5 * series)
+
+
+def metal_cm2(symbol: str, energies_kev: Floats) -> Floats:
+    """Photoabsorption cross-section of a heavier atom (Henke et al. 1993), cm²."""
+    tabulated, factor = _scattering_factor(symbol)
+    f2 = np.exp(np.interp(np.log(energies_kev), np.log(tabulated), np.log(factor)))
+    return np.asarray(2.0 * _ELECTRON_RADIUS_CM * _WAVELENGTH_CM_KEV / energies_kev * f2)
+
+
+def edges_kev() -> Floats:
+    """Pairs of energies on both sides of every absorption edge, shape (n, 2), keV."""
+    pairs = []
+    for symbol in SOLAR_1982:
+        if symbol == "He":
+            continue
+        energies, factor = _scattering_factor(symbol)
+        jump = (np.diff(energies) < _EDGE_GAP_KEV) & (factor[1:] > _EDGE_JUMP * factor[:-1])
+        pairs += [(energies[k], energies[k + 1]) for k in np.nonzero(jump)[0]]
+    inside = [pair for pair in pairs if LOWEST_KEV < pair[0] and pair[1] < HIGHEST_KEV]
+    return np.array(sorted(inside))
+
+
+def compute() -> dict[str, Floats]:
+    """Compute the table.
+
+    Returns
+    -------
+    dict of ndarray
+        ``energies_kev``, shape (n,), increasing, with close pairs at edges; ``interstellar`` and
+        ``solar_1982``, shape (n,), cm² keV³ per hydrogen atom; ``edges_kev``, shape (m,).
+    """
+    edges = edges_kev()
+    smooth = np.geomspace(LOWEST_KEV, HIGHEST_KEV, _SMOOTH_POINTS)
+    nearest = np.min(np.abs(smooth[:, None] - edges.mean(axis=1)), axis=1)
+    energies = np.unique(np.concatenate([smooth[nearest > 2.0 * _EDGE_GAP_KEV], edges.ravel()]))
+    light = hydrogen_cm2(energies)
+    metals = {symbol: metal_cm2(symbol, energies) for symbol in SOLAR_1982 if symbol != "He"}
+    metals["He"] = helium_cm2(energies)
+
+    def total(abundance: dict[str, float]) -> Floats:
+        heavy = sum(number * metals[symbol] for symbol, number in abundance.items())
+        return np.asarray((light + heavy) * energies**3)
+
+    return {
+        "energies_kev": energies,
+        "interstellar": total({s: 10.0 ** (a - 12.0) for s, a in INTERSTELLAR.items()}),
+        "solar_1982": total(SOLAR_1982),
+        "edges_kev": edges.mean(axis=1),
+    }
+
+
+def _scattering_factor(symbol: str) -> tuple[Floats, Floats]:
+    import periodictable
+
+    table = np.asarray(periodictable.elements.symbol(symbol).xray.sftable)
+    return table[0], table[2]
+
+
+def main() -> None:
+    """Write the table to the file named, or to where the package keeps it."""
+    default = Path(__file__).with_name("data") / "absorption.npz"
+    target = Path(sys.argv[1]) if len(sys.argv) > 1 else default
+    table = compute()
+    with target.open("wb") as stream:
+        np.savez_compressed(
+            stream,
+            energies_kev=table["energies_kev"],
+            interstellar=table["interstellar"],
+            solar_1982=table["solar_1982"],
+            edges_kev=table["edges_kev"],
+        )
+
+
+if __name__ == "__main__":
+    main()
