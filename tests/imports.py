@@ -27,7 +27,7 @@ FLOORS = (
         "ground",
         (
             *("errors", "constants", "limits", "quantities"),
-            *("parallel", "progress", "arrays", "_resources"),
+            *("parallel", "progress", "arrays", "quadrature", "_resources"),
         ),
     ),
 )

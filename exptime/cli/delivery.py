@@ -99,6 +99,14 @@ def output_width() -> int:
     return max(40, min(shutil.get_terminal_size((PIPED_WIDTH, 24)).columns, _WIDEST))
 
 
+def printable(text: str) -> str:
+    """Return the text on one line, without characters that steer a terminal."""
+    return "".join(
+        character if character.isprintable() else " " if character.isspace() else "\ufffd"
+        for character in text
+    )
+
+
 def _remark(output: str, kind: str) -> None:
     """Say on standard error when the name of a file promises another format."""
     promised = _SUFFIXES.get(os.path.splitext(output)[1].lower(), kind)

@@ -72,15 +72,9 @@ def _explain(error: Exception) -> int:
 
 def _say(message: str) -> None:
     """Print one message to standard error on a line of its own."""
+    from exptime.cli.delivery import printable
+
     print(f"exptime: {printable(message)}", file=sys.stderr)
-
-
-def printable(text: str) -> str:
-    """Return the text on one line, without characters that steer a terminal."""
-    return "".join(
-        character if character.isprintable() else " " if character.isspace() else "\ufffd"
-        for character in text
-    )
 
 
 def _give_up_output() -> None:

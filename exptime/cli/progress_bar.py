@@ -29,11 +29,11 @@ def progress_bar(label: str, *, is_quiet: bool) -> Iterator[Progress]:
         yield silent
         return
     from rich.console import Console
-    from rich.progress import BarColumn, MofNCompleteColumn, TextColumn, TimeRemainingColumn
+    from rich.progress import BarColumn, TaskProgressColumn, TextColumn, TimeRemainingColumn
     from rich.progress import Progress as Bar
 
     columns = (TextColumn("{task.description}"), BarColumn())
-    numbers = (MofNCompleteColumn(), TimeRemainingColumn())
+    numbers = (TaskProgressColumn(), TimeRemainingColumn())
     with Bar(*columns, *numbers, console=Console(stderr=True), transient=True) as bar:
         task = bar.add_task(label, total=None)
 

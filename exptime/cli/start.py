@@ -49,8 +49,7 @@ def run(arguments: argparse.Namespace) -> None:
     import shlex
 
     import exptime
-    from exptime.cli.delivery import deliver_text
-    from exptime.cli.failures import printable
+    from exptime.cli.delivery import deliver_text, printable
     from exptime.cli.options import read_file_name
     from exptime.documents.writing import write_text
 
