@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 from functools import cache
 
 import numpy as np
@@ -39,7 +40,7 @@ def piecewise_nodes(
     bounds = np.unique(breakpoints)
     pieces = [
         np.linspace(low, high, _parts(low, high, widest, widest_relative), endpoint=False)
-        for low, high in zip(bounds[:-1], bounds[1:], strict=True)
+        for low, high in itertools.pairwise(bounds)
     ]
     ends = np.append(np.concatenate(pieces), bounds[-1])
     middle, half = 0.5 * (ends[1:] + ends[:-1]), 0.5 * np.diff(ends)

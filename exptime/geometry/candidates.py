@@ -10,7 +10,7 @@ from typing import Final
 import numpy as np
 
 from exptime.arrays import Booleans, Floats
-from exptime.geometry.likelihood import Band, bands_of, fractions_of, log_likelihood
+from exptime.geometry.likelihood import bands_of, fractions_of, log_likelihood
 from exptime.observation.rates import source_harmonics
 from exptime.observation.response import Response
 from exptime.observation.scene import Scene
@@ -122,7 +122,7 @@ def evaluate(search: Search, point: Floats) -> Candidate | None:
         return None
     scene = _scene(search.target, star, spots)
     harmonics = source_harmonics(scene, view, search.pulses, (_FINE, _FINE))
-    bands: tuple[Band, ...] = bands_of(search.target)
+    bands = bands_of(search.target)
     fractions = fractions_of(search.target, bands, harmonics)
     likelihood = log_likelihood(search.target, bands, harmonics, fractions)
     return Candidate(star=star, spots=spots, fractions=fractions, log_likelihood=likelihood)

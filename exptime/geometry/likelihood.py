@@ -3,32 +3,16 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 
 import numpy as np
 
 from exptime.arrays import Complexes, Floats
 from exptime.geometry.light_curve import harmonic_fraction, noisy_pulsed_fraction, pulsed_fraction
+from exptime.observation.bands import Band
 from exptime.star.pulse import bin_waves
 from exptime.target.records import FoldedShape, HarmonicShape, PulsedFraction, PulseShape, Target
 
 _SHIFTS = 256
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Band:
-    """Where a pulse was measured.
-
-    Parameters
-    ----------
-    band_kev : tuple of float
-        Lower and upper energy, keV.
-    instrument : str or None
-        None: photon flux at the observer; else counts of this instrument.
-    """
-
-    band_kev: tuple[float, float]
-    instrument: str | None
 
 
 def bands_of(target: Target) -> tuple[Band, ...]:

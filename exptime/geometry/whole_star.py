@@ -96,4 +96,3 @@ def _temperature_that_does(
         if whole_star_flux(search, star, trial) >= wanted:
             return trial
     return None
-

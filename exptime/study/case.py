@@ -167,7 +167,10 @@ def answer(
         prior_sigma=prior,
         covariance=np.array([precision.covariance for precision in precisions]),
         required_s=np.array(
-            [required_exposure(experiment, goal.quantity, goal.precision) for goal in question.goals]
+            [
+                required_exposure(experiment, goal.quantity, goal.precision)
+                for goal in question.goals
+            ]
         ),
         condition=precisions[-1].condition,
         source_per_s=linearised.source_per_s,

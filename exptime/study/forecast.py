@@ -15,7 +15,7 @@ from exptime.interstellar.absorption import load_absorption
 from exptime.observation.instrument_response import instrument_response
 from exptime.parallel import workers
 from exptime.progress import Progress, silent
-from exptime.study.case import Case, Question, answer, correlation, resolutions_for
+from exptime.study.case import Case, Geometry, Question, answer, correlation, resolutions_for
 from exptime.study.geometries import Draws, GeometrySet, InstrumentReader, geometries_of
 from exptime.study.records import (
     ExpectedData,
@@ -119,9 +119,7 @@ def median_index(cases: Sequence[Case], weights: Floats) -> int:
     return int(np.argmax(finite if finite.max() >= 0.0 else weights))
 
 
-def resolution_change(
-    question: Question, geometry: tuple[object, ...], case: Case
-) -> float:
+def resolution_change(question: Question, geometry: Geometry, case: Case) -> float:
     """Relative change of sigma(radius) at the longest exposure when every resolution doubles."""
     doubled = [resolution.doubled() for resolution in resolutions_for(question, geometry)]
     again = answer(question, geometry, doubled)
@@ -161,7 +159,9 @@ def _collect(
             np.array([correlation(case.covariance[-1]) for case in cases]), weights
         ),
         goals=tuple(
-            _goal_result(goal, np.array([case.required_s[row] for case in cases]), question, weights)
+            _goal_result(
+                goal, np.array([case.required_s[row] for case in cases]), question, weights
+            )
             for row, goal in enumerate(question.goals)
         ),
         margin=margin,

@@ -197,9 +197,7 @@ def _compare_fractions(
         highest_kev=float(response.nodes_kev.max()),
         tolerance=1e-5,
     )
-    resolutions = [
-        resolution_needed(view, spot, scene.emission, accuracy) for spot in scene.spots
-    ]
+    resolutions = [resolution_needed(view, spot, scene.emission, accuracy) for spot in scene.spots]
     harmonics = source_harmonics(scene, view, response, resolutions)
     fractions = fractions_of(target, bands, harmonics)
     doubts = [
@@ -224,9 +222,7 @@ def _compare_flux(target: Target, scene: Scene, absorption: Absorption) -> list[
         highest_kev=measured.band_kev[1],
         tolerance=1e-4,
     )
-    resolutions = [
-        resolution_needed(view, spot, scene.emission, accuracy) for spot in scene.spots
-    ]
+    resolutions = [resolution_needed(view, spot, scene.emission, accuracy) for spot in scene.spots]
     flux = float(source_harmonics(scene, view, response, resolutions)[0, 0].real)
     sigma = measured.uncertainty or _FLUX_UNCERTAINTY * measured.value
     if abs(flux - measured.value) <= _DISAGREEMENT_SIGMA * sigma:

@@ -12,7 +12,6 @@ from exptime.star.records import HotSpot, Star
 from exptime.target.records import Target
 
 
-
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Spread:
     """Weighted quantiles over geometries; infinite where unconstrained.

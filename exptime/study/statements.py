@@ -82,7 +82,9 @@ def warnings_of(
                 f"The quantiles rest on {effective:.0f} effective geometries, fewer than "
                 f"{_FEWEST_EFFECTIVE:.0f}: ask for more --draws."
             )
-    unconstrained = float(weights[[not np.isfinite(case.data_sigma[-1, 1]) for case in cases]].sum())
+    unconstrained = float(
+        weights[[not np.isfinite(case.data_sigma[-1, 1]) for case in cases]].sum()
+    )
     if unconstrained > 0.0:
         sentences.append(
             f"For {unconstrained:.0%} of the geometries the data leave the radius unconstrained; "
