@@ -1,0 +1,29 @@
+"""The README says what the program does."""
+
+from __future__ import annotations
+
+import re
+
+from exptime.cli.parser import COMMANDS, build_parser
+from tests.makers.readme import README, with_keys
+
+TEXT = README.read_text(encoding="utf-8")
+
+
+def test_the_tables_of_keys_are_those_of_the_program() -> None:
+    """`python -m tests.makers.readme` renders them anew."""
+    assert with_keys(TEXT) == TEXT
+    assert TEXT.count("| key | example |") == 2
+
+
+def test_every_option_is_listed() -> None:
+    """No option of any command is missing from the README."""
+    parser = build_parser()
+    listed = TEXT.split("## Commands and options")[1].split("\n## ")[0]
+    for command in COMMANDS:
+        name = command.__name__.rpartition(".")[2]
+        assert f"`exptime {name}" in listed
+        group = parser._subparsers._group_actions[0]  # type: ignore[union-attr]
+        for action in group.choices[name]._actions:  # type: ignore[index,call-overload]
+            for option in action.option_strings[-1:]:
+                assert option in (*re.findall(r"--[\w-]+", listed), "--help", "--instrument")
