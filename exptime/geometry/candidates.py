@@ -27,7 +27,7 @@ from exptime.target.defaults import (
 from exptime.target.records import Target
 
 _ROUGH: Final = Resolution(harmonics=1, rings=8, redshift_terms=8)
-_FINE: Final = Resolution(harmonics=32, rings=8, redshift_terms=8)
+_FINE: Final = Resolution(harmonics=24, rings=8, redshift_terms=8)
 _LARGEST_RATIO = 3.0
 _LARGEST_RADIUS = 0.5 * math.pi
 _FLUX_TOLERANCE = 3e-3

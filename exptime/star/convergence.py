@@ -15,6 +15,7 @@ from exptime.star.resolution import Resolution
 from exptime.star.spectrum import terms_needed
 from exptime.star.view import View, check_star, view_of
 
+_FEWEST_HARMONICS = 16
 _FEWEST_RINGS = 8
 _MOST_RINGS = 256
 
@@ -104,7 +105,7 @@ def resolution_needed(
         What to reach.
     """
     start = Resolution(
-        harmonics=max(64, 2 * accuracy.phase_bins), rings=_FEWEST_RINGS, redshift_terms=1
+        harmonics=_FEWEST_HARMONICS, rings=_FEWEST_RINGS, redshift_terms=1
     )
     rough = spot_moments(view, emission, spot, replace(start, harmonics=2))
     terms = terms_needed(accuracy.energies_kev, spot.temperature_kev, rough.redshift_range)

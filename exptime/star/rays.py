@@ -134,7 +134,10 @@ def _inward_nodes(
         value = depth * ((1.0 - u) * (2.0 + depth) - u * (1.0 + depth) ** 2) - target
         slope = (1.0 - u) * (2.0 + 2.0 * depth) - u * (1.0 + depth) * (1.0 + 3.0 * depth)
         with np.errstate(all="ignore"):
-            depth = np.where(slope > 0.0, depth - value / slope, np.nan)
+            step = np.where(slope > 0.0, value / slope, np.nan)
+        depth = depth - step
+        if not np.any(np.abs(step) > 1e-16 * depth):
+            break
     x, weight = _unit_nodes()
     peri, v = 1.0 + depth[..., None], u[..., None]
     w = peri - depth[..., None] * x**2

@@ -18,6 +18,8 @@ from exptime.star.ray_table import RaySeries, RayTable
 from exptime.star.records import Star
 
 _SCAN = np.linspace(0.0, np.pi, 121)
+_HORIZON_TOLERANCE = 1e-10
+"""The kernel vanishes at the horizon: an error there enters squared."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -93,9 +95,25 @@ def horizon_azimuth(rings: Rings) -> Floats:
     count = len(rings.colatitude)
     near, far = np.ones(count), -np.ones(count)
     at_near, at_far = cos_sigma(rings, near), cos_sigma(rings, far)
-    root = bracketed_roots(lambda cosine: cos_sigma(rings, cosine), far, near, (at_far, at_near))
+    if not np.any(at_near * at_far < 0.0):
+        return np.where(at_near + at_far > 0.0, np.pi, 0.0)
+    guess = _untilted_horizon(rings)
+    at_guess = cos_sigma(rings, guess)
+    root = bracketed_roots(
+        lambda cosine: cos_sigma(rings, cosine),
+        np.where(at_guess > 0.0, far, near),
+        guess,
+        (np.where(at_guess > 0.0, at_far, at_near), at_guess),
+        _HORIZON_TOLERANCE,
+    )
     azimuth = np.arccos(np.clip(root, -1.0, 1.0))
     return np.where(at_far >= 0.0, np.pi, np.where(at_near <= 0.0, 0.0, azimuth))
+
+
+def _untilted_horizon(rings: Rings) -> Floats:
+    """Cosine of the azimuth at which rays leave at 90 deg to the radius vector, clipped."""
+    gap = np.cos(rings.rays.psi_horizon) - rings.along
+    return np.clip(gap / np.maximum(rings.across, 1e-12), -1.0, 1.0)
 
 
 def visibility_transitions(star: Star, table: RayTable) -> Floats:
