@@ -43,10 +43,10 @@ class Steps:
         rad.
     """
 
-    mass: float = 3e-4
-    radius: float = 3e-4
-    cos_inclination: float = 3e-4
-    colatitude: float = 3e-4
+    mass: float = 1e-4
+    radius: float = 1e-4
+    cos_inclination: float = 1e-4
+    colatitude: float = 1e-4
     angular_radius: float = 1e-3
 
 
