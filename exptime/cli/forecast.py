@@ -61,8 +61,9 @@ def run(arguments: argparse.Namespace) -> None:
     import exptime
     from exptime.cli.delivery import deliver, refuse_output
     from exptime.cli.gathering import Gathering
-    from exptime.cli.options import read_exposures, read_goal, read_margin, read_whole
+    from exptime.cli.options import read_exposures, read_goal, read_margin, read_whole, with_unit
     from exptime.cli.progress_bar import progress_bar
+    from exptime.quantities import to_quantity
 
     gathering = Gathering()
     inputs = (arguments.target, arguments.instrument)
@@ -80,7 +81,7 @@ def run(arguments: argparse.Namespace) -> None:
         result = exptime.forecast(
             target.value,
             instrument.value,
-            exposures=exposures.value,
+            exposures=to_quantity(exposures.value, "s"),
             goals=[goal.value for goal in goals],
             margin=margin.value,
             draws=draws.value,

@@ -90,14 +90,16 @@ def _flux(arguments: argparse.Namespace, gathering: Gathering) -> Callable[..., 
     from functools import partial
 
     import exptime
-    from exptime.cli.options import read_energies, read_whole
+    from exptime.cli.options import read_energies, read_whole, with_unit
+    from exptime.quantities import to_quantity
 
     written = DEFAULT_ENERGIES if arguments.energies is None else arguments.energies
     energies = gathering.read("--energies", read_energies, written)
     phases = gathering.read("--phases", read_whole, arguments.phases or DEFAULT_PHASES, 4, 1024)
     target = gathering.read("TARGET", exptime.read_target, arguments.target)
     gathering.finish()
-    return partial(exptime.pulse, target.value, energies=energies.value, phases=phases.value)
+    wanted = to_quantity(energies.value, "keV")
+    return partial(exptime.pulse, target.value, energies=wanted, phases=phases.value)
 
 
 def _counts(arguments: argparse.Namespace, gathering: Gathering) -> Callable[..., Result]:
@@ -105,21 +107,22 @@ def _counts(arguments: argparse.Namespace, gathering: Gathering) -> Callable[...
     from functools import partial
 
     import exptime
-    from exptime.cli.options import read_exposure, read_whole
+    from exptime.cli.options import read_exposure, read_whole, with_unit
+    from exptime.quantities import to_quantity
 
     exposure = gathering.read("--exposure", read_exposure, arguments.exposure or MISSING_EXPOSURE)
     target = gathering.read("TARGET", exptime.read_target, arguments.target)
     instrument = gathering.read("-i", exptime.read_instrument, arguments.instrument)
-    options = {}
+    phases = None
     if arguments.phases is not None:
-        options["phases"] = gathering.read("--phases", read_whole, arguments.phases, 4, 1024)
+        phases = gathering.read("--phases", read_whole, arguments.phases, 4, 1024)
     gathering.finish()
     return partial(
         exptime.expected_counts,
         target.value,
         instrument.value,
-        exposure.value,
-        **{name: reading.value for name, reading in options.items()},
+        to_quantity(exposure.value, "s"),
+        phases=None if phases is None else phases.value,
     )
 
 
