@@ -34,11 +34,16 @@ SOLAR_1982: Final = {
 }  # fmt: skip
 """Number per hydrogen atom."""
 
+METALS: Final = tuple(symbol for symbol in SOLAR_1982 if symbol != "He")
+
 HYDROGEN_EDGE_KEV: Final = 0.013598
 HELIUM_EDGE_KEV: Final = 0.02458
 LOWEST_KEV: Final = 0.03
 HIGHEST_KEV: Final = 30.0
-_SMOOTH_POINTS = 420
+EDGE_WIDTH: Final = 1e-7
+"""Half the width that an edge keeps, over its energy."""
+
+_ACCURACY = 2e-4
 _EDGE_GAP_KEV = 0.0003
 _EDGE_JUMP = 1.1
 _ELECTRON_RADIUS_CM = 2.8179403e-13
@@ -67,22 +72,29 @@ def helium_cm2(energies_kev: Floats) -> Floats:
 
 def metal_cm2(symbol: str, energies_kev: Floats) -> Floats:
     """Photoabsorption cross-section of a heavier atom (Henke et al. 1993), cm²."""
-    tabulated, factor = _scattering_factor(symbol)
+    tabulated, factor, _ = _scattering_factor(symbol)
     f2 = np.exp(np.interp(np.log(energies_kev), np.log(tabulated), np.log(factor)))
     return np.asarray(2.0 * _ELECTRON_RADIUS_CM * _WAVELENGTH_CM_KEV / energies_kev * f2)
 
 
-def edges_kev() -> Floats:
-    """Pairs of energies on both sides of every absorption edge, shape (n, 2), keV."""
-    pairs = []
-    for symbol in SOLAR_1982:
-        if symbol == "He":
-            continue
-        energies, factor = _scattering_factor(symbol)
-        jump = (np.diff(energies) < _EDGE_GAP_KEV) & (factor[1:] > _EDGE_JUMP * factor[:-1])
-        pairs += [(energies[k], energies[k + 1]) for k in np.nonzero(jump)[0]]
-    inside = [pair for pair in pairs if LOWEST_KEV < pair[0] and pair[1] < HIGHEST_KEV]
-    return np.array(sorted(inside))
+def gas_cm2(abundances: str, energies_kev: Floats) -> Floats:
+    """Cross-section per hydrogen atom of neutral gas, cm².
+
+    Parameters
+    ----------
+    abundances : {"interstellar", "solar_1982"}
+        Numbers of atoms.
+    energies_kev : ndarray
+        Photon energies, keV.
+    """
+    numbers = {
+        "interstellar": {symbol: 10.0 ** (value - 12.0) for symbol, value in INTERSTELLAR.items()},
+        "solar_1982": SOLAR_1982,
+    }[abundances]
+    total = hydrogen_cm2(energies_kev) + numbers["He"] * helium_cm2(energies_kev)
+    for symbol in METALS:
+        total += numbers[symbol] * metal_cm2(symbol, energies_kev)
+    return np.asarray(total)
 
 
 def compute() -> dict[str, Floats]:
@@ -91,34 +103,69 @@ def compute() -> dict[str, Floats]:
     Returns
     -------
     dict of ndarray
-        ``energies_kev``, shape (n,), increasing, with close pairs at edges; ``interstellar`` and
-        ``solar_1982``, shape (n,), cm² keV³ per hydrogen atom; ``edges_kev``, shape (m,).
+        ``energies_kev``, shape (n,), increasing, with two knots at every edge; ``interstellar``
+        and ``solar_1982``, shape (n,), cm² keV³ per hydrogen atom; ``edges_kev``, shape (m,).
+        Straight lines between logarithms follow the atoms' own tables to 2e-4.
     """
-    edges = edges_kev()
-    smooth = np.geomspace(LOWEST_KEV, HIGHEST_KEV, _SMOOTH_POINTS)
-    nearest = np.min(np.abs(smooth[:, None] - edges.mean(axis=1)), axis=1)
-    energies = np.unique(np.concatenate([smooth[nearest > 2.0 * _EDGE_GAP_KEV], edges.ravel()]))
-    light = hydrogen_cm2(energies)
-    metals = {symbol: metal_cm2(symbol, energies) for symbol in SOLAR_1982 if symbol != "He"}
-    metals["He"] = helium_cm2(energies)
-
-    def total(abundance: dict[str, float]) -> Floats:
-        heavy = sum(number * metals[symbol] for symbol, number in abundance.items())
-        return np.asarray((light + heavy) * energies**3)
-
-    return {
-        "energies_kev": energies,
-        "interstellar": total({s: 10.0 ** (a - 12.0) for s, a in INTERSTELLAR.items()}),
-        "solar_1982": total(SOLAR_1982),
-        "edges_kev": edges.mean(axis=1),
-    }
+    curves = {symbol: _scattering_factor(symbol) for symbol in METALS}
+    edges = _inside(np.concatenate([curve[2] for curve in curves.values()]))
+    pairs = np.concatenate([edges * (1.0 - EDGE_WIDTH), edges * (1.0 + EDGE_WIDTH)])
+    fine = _inside(np.concatenate([curve[0] for curve in curves.values()]))
+    # Most atoms share the grid of the first; a few have finer ones of their own.
+    first = _inside(curves[METALS[0]][0])
+    knots = np.unique(np.concatenate([[LOWEST_KEV, HIGHEST_KEV], first, pairs]))
+    truth = {name: gas_cm2(name, fine) * fine**3 for name in ("interstellar", "solar_1982")}
+    while True:
+        scaled = {name: gas_cm2(name, knots) * knots**3 for name in truth}
+        error = np.max([_misfit(fine, knots, truth[n], scaled[n]) for n in truth], axis=0)
+        worst = _worst_between(fine, knots, error)
+        if not len(worst):
+            return {"energies_kev": knots, **scaled, "edges_kev": edges}
+        knots = np.unique(np.concatenate([knots, fine[worst]]))
 
 
-def _scattering_factor(symbol: str) -> tuple[Floats, Floats]:
+def _scattering_factor(symbol: str) -> tuple[Floats, Floats, Floats]:
+    """Return energies (keV), scattering factor f2 and the edges (keV) of an atom.
+
+    The table has two rows for an edge, 0.2 eV apart; they are drawn together here.
+    """
     import periodictable
 
     table = np.asarray(periodictable.elements.symbol(symbol).xray.sftable)
-    return table[0], table[2]
+    # One atom has the energies of two rows of an edge exchanged.
+    energies, factor = np.sort(table[0]), table[2]
+    jump = (np.diff(energies) < _EDGE_GAP_KEV) & (factor[1:] > _EDGE_JUMP * factor[:-1])
+    jump &= energies[:-1] > LOWEST_KEV
+    edges = 0.5 * (energies[:-1] + energies[1:])[jump]
+    ends, begins = np.append(jump, False), np.insert(jump, 0, False)
+    alone = ~(ends | begins)
+    moved = np.concatenate(
+        [energies[alone], edges * (1.0 - EDGE_WIDTH), edges * (1.0 + EDGE_WIDTH)]
+    )
+    order = np.argsort(moved, kind="stable")
+    values = np.concatenate([factor[alone], factor[ends], factor[begins]])
+    return moved[order], values[order], edges
+
+
+def _inside(energies: Floats) -> Floats:
+    """Return the energies inside the table's range, increasing, each once."""
+    return np.unique(energies[(energies > LOWEST_KEV) & (energies < HIGHEST_KEV)])
+
+
+def _misfit(at: Floats, knots: Floats, truth: Floats, scaled: Floats) -> Floats:
+    """Return the relative error of straight lines between logarithms."""
+    line = np.interp(np.log(at), np.log(knots), np.log(scaled))
+    return np.asarray(np.abs(np.exp(line) / truth - 1.0))
+
+
+def _worst_between(at: Floats, knots: Floats, error: Floats) -> list[int]:
+    """Return the worst point of every interval that has one above the accuracy wanted."""
+    interval = np.searchsorted(knots, at)
+    bad = np.flatnonzero(error > _ACCURACY)
+    return [
+        int(group[np.argmax(error[group])])
+        for group in (bad[interval[bad] == k] for k in np.unique(interval[bad]))
+    ]
 
 
 def main() -> None:
