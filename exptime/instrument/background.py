@@ -40,7 +40,7 @@ def background_rates(
         Counts per second in each channel, and warnings; None when something is wrong.
     """
     group = values.group("background")
-    if group is None:
+    if group is None or group.text("file") == "none":
         return None if edges is None else (np.zeros(len(edges) - 1), [])
     has_rate = group.is_given("rate") or group.is_given("photon_index")
     name, rate, index = group.text("file"), group.number("rate"), group.number("photon_index")
@@ -86,11 +86,14 @@ def power_law_rates(rate_per_s: float, photon_index: float, edges_kev: Floats) -
 
 def background_knowledge(values: Values, faults: Faults) -> BackgroundKnowledge | None:
     """Return what a description says is known of the background; None when it is faulty."""
+    group = values.group("background_knowledge")
+    stated = BackgroundKnowledge(kind="unknown") if group is None else _stated(group, faults)
     if not values.is_given("background"):
         return BackgroundKnowledge(kind="known")
-    group = values.group("background_knowledge")
-    if group is None:
-        return BackgroundKnowledge(kind="unknown")
+    return stated
+
+
+def _stated(group: Values, faults: Faults) -> BackgroundKnowledge | None:
     level, scale = group.text("level"), group.number("scale")
     if group.is_given("level") == group.is_given("scale"):
         faults.add("give one kind of knowledge.", group.place, _LEVEL_EXAMPLE)

@@ -19,7 +19,7 @@ REDISTRIBUTION: Final = Field(
         Field(
             key="file",
             kind="text",
-            meaning="A redistribution matrix file; not supported yet",
+            meaning="The word perfect; a redistribution matrix file is not supported yet",
             example="response.rmf",
         ),
         Field(
@@ -94,7 +94,7 @@ BACKGROUND: Final = Field(
         Field(
             key="file",
             kind="text",
-            meaning="A table with columns energy (keV) and rate (ct s-1 keV-1)",
+            meaning="A table with columns energy (keV) and rate (ct s-1 keV-1), or the word none",
             example="background.ecsv",
         ),
         Field(
@@ -145,19 +145,7 @@ KNOWLEDGE: Final = Field(
 )
 
 
-def _share(key: str, meaning: str, example: str, maximum: float, default: str) -> Field:
-    return Field(
-        key=key,
-        kind="quantity",
-        meaning=meaning,
-        example=example,
-        minimum=0.0,
-        maximum=maximum,
-        default=default,
-    )
-
-
-def _time(key: str, meaning: str, default: str) -> Field:
+def _time(key: str, meaning: str, assumption: str = "") -> Field:
     return Field(
         key=key,
         kind="quantity",
@@ -166,7 +154,8 @@ def _time(key: str, meaning: str, default: str) -> Field:
         example="100 ns",
         minimum=0.0,
         maximum=1e3,
-        default=default,
+        default="0 s",
+        assumption=assumption,
     )
 
 
@@ -190,11 +179,21 @@ INSTRUMENT_FIELDS: Final = (
     CHANNELS,
     BACKGROUND,
     KNOWLEDGE,
-    _time("time_resolution", "Full width of the time bin", "0 s"),
-    _time("time_uncertainty", "One-sigma clock error", "0 s"),
-    _share(
-        "area_uncertainty", "One standard deviation of a common factor on the area", "3 %", 1.0,
-        "0, the area is exact",
+    _time(
+        "time_resolution",
+        "Full width of the time bin",
+        "Arrival times are not binned: no time_resolution was given.",
+    ),
+    _time("time_uncertainty", "One-sigma clock error"),
+    Field(
+        key="area_uncertainty",
+        kind="quantity",
+        meaning="One standard deviation of a common factor on the area; 0 holds it",
+        example="3 %",
+        minimum=0.0,
+        maximum=1.0,
+        default="0, the area is exact",
+        assumption="The effective area is exact: no area_uncertainty was given.",
     ),
     Field(
         key="observing_efficiency",
@@ -215,4 +214,4 @@ INSTRUMENT_FIELDS: Final = (
         maximum=256,
         default="32",
     ),
-)  # fmt: skip
+)

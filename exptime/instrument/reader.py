@@ -85,6 +85,7 @@ def read_instrument(name: str) -> Instrument:
         phase_bins=int(values.number("phase_bins") or 32),
         assumptions=_assumptions(values),
         warnings=(
+            *_uneven_channels(channel_edges),
             *area_doubts,
             *area_warnings(effective_area, channel_edges),
             *background_doubts,
@@ -137,6 +138,16 @@ def _channel_edges(values: Values, faults: Faults) -> Floats | None:
     return np.asarray(edges)
 
 
+def _uneven_channels(edges: Floats) -> list[str]:
+    widths = np.diff(edges)
+    if abs(widths[-1] - widths[0]) <= 1e-6 * widths[0]:
+        return []
+    return [
+        f"The width of the channels does not divide their band: the last one is "
+        f"{widths[-1]:.4g} keV wide, the others {widths[0]:.4g} keV."
+    ]
+
+
 def _area(values: Values, document: str, faults: Faults) -> tuple[EffectiveArea, list[str]] | None:
     name = values.text("effective_area")
     if name is None:
@@ -145,7 +156,7 @@ def _area(values: Values, document: str, faults: Faults) -> tuple[EffectiveArea,
 
 
 def _redistribution(group: Values | None, faults: Faults) -> Redistribution | None:
-    if group is None:
+    if group is None or group.text("file") == "perfect":
         return Redistribution()
     if group.is_given("file"):
         faults.add(

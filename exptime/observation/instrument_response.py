@@ -2,16 +2,10 @@
 
 from __future__ import annotations
 
-import numpy as np
-
 from exptime.instrument.records import Instrument
-from exptime.instrument.response import photon_breakpoints, response_matrix, widest_piece_kev
+from exptime.instrument.response import photon_nodes, response_matrix
 from exptime.interstellar.absorption import Absorption
 from exptime.observation.response import Response
-from exptime.quadrature import piecewise_nodes
-
-_ORDER = 4
-_MANY_BREAKPOINTS = 400
 
 
 def instrument_response(instrument: Instrument, absorption: Absorption) -> Response:
@@ -30,14 +24,7 @@ def instrument_response(instrument: Instrument, absorption: Absorption) -> Respo
         With nodes that resolve the redistribution, the knots of the area and the absorption
         edges.
     """
-    breakpoints = photon_breakpoints(instrument)
-    low, high = breakpoints[0], breakpoints[-1]
-    edges = absorption.edges_kev[(absorption.edges_kev > low) & (absorption.edges_kev < high)]
-    # Tables of thousands of rows are themselves fine: one node a row is then enough.
-    order = _ORDER if len(breakpoints) < _MANY_BREAKPOINTS else 2
-    nodes, weights = piecewise_nodes(
-        np.concatenate([breakpoints, edges]), widest_piece_kev(instrument), order
-    )
+    nodes, weights = photon_nodes(instrument, absorption.edges_kev)
     matrix = response_matrix(instrument, nodes, weights)
     reached = matrix.any(axis=1)
     return Response(
