@@ -33,6 +33,7 @@ if TYPE_CHECKING:
     Many: TypeAlias = Quantity | str | Sequence[Quantity | str]
 
 DEFAULT_EXPOSURES_S = tuple(np.geomspace(1e5, 3e6, 13).tolist())
+DEFAULT_GOALS = (("radius", 0.05),)
 _LONGEST_S = 1e8
 _MOST_PHASES = 1024
 
@@ -191,7 +192,7 @@ def forecast(
     instrument: Instrument | str,
     *,
     exposures: Many | None = None,
-    goals: Iterable[tuple[str, float]] = (),
+    goals: Iterable[tuple[str, float]] = DEFAULT_GOALS,
     margin: float = 0.0,
     draws: int = 128,
     seed: int = 1,
@@ -210,7 +211,8 @@ def forecast(
     exposures : Quantity or str, or several, optional
         Good on-source times; 13 between 100 ks and 3 Ms when not given.
     goals : iterable of (str, float)
-        Quantity (mass, radius or compactness) and wanted precision, e.g. ``("radius", 0.05)``.
+        Quantity (mass, radius or compactness) and wanted precision; 5 per cent in radius when
+        not given.
     margin : float
         Share added to required exposures in the text.
     draws : int

@@ -42,7 +42,8 @@ def add_parser(commands: argparse._SubParsersAction[argparse.ArgumentParser]) ->
         action="append",
         metavar="GOAL",
         default=[],
-        help='wanted precision such as "radius 5%%", also of mass or compactness; repeatable',
+        help='wanted precision such as "radius 5%%", also of mass or compactness; repeatable '
+        "(default radius 5%%)",
     )
     parser.add_argument(
         "--margin",
@@ -59,6 +60,7 @@ def add_parser(commands: argparse._SubParsersAction[argparse.ArgumentParser]) ->
 def run(arguments: argparse.Namespace) -> None:
     """Read the input, forecast, write the report."""
     import exptime
+    from exptime.api import DEFAULT_GOALS
     from exptime.cli.delivery import deliver, refuse_output
     from exptime.cli.gathering import Gathering
     from exptime.cli.options import read_exposures, read_goal, read_margin, read_whole, with_unit
@@ -82,7 +84,7 @@ def run(arguments: argparse.Namespace) -> None:
             target.value,
             instrument.value,
             exposures=to_quantity(exposures.value, "s"),
-            goals=[goal.value for goal in goals],
+            goals=[goal.value for goal in goals] or DEFAULT_GOALS,
             margin=margin.value,
             draws=draws.value,
             seed=seed.value,

@@ -28,9 +28,9 @@ from exptime.parallel import Workers
 from exptime.progress import Progress, silent
 
 _FIRST_ROUND = 512
-_ROUND = 384
-_MOST_ROUNDS = 16
-_ENOUGH = 1.5
+_ROUND = 256
+_MOST_ROUNDS = 24
+_ENOUGH = 1.2
 _KERNELS_WANTED = 40.0
 _UNIFORM_SHARE = 0.2
 _SOFTEST = 1e-6
