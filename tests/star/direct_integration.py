@@ -14,6 +14,7 @@ Nothing here comes from `exptime.star` but the records that describe a star. Two
 
 from __future__ import annotations
 
+import itertools
 import math
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
@@ -130,7 +131,7 @@ def _colatitudes(star: Star, spot: HotSpot, rows: int, mistake: Mistake) -> tupl
     weight = step * math.pi * np.cosh(s) * t * outer
     edges = sorted(cuts)
     nodes, weights = [], []
-    for a, b in zip(edges[:-1], edges[1:], strict=True):
+    for a, b in itertools.pairwise(edges):
         if b - a > 1e-12:
             nodes.append(np.where(t < 0.5, a + (b - a) * t, b - (b - a) * outer))
             weights.append((b - a) * weight)
