@@ -36,7 +36,7 @@ SOLAR_1982: Final = {
 
 METALS: Final = tuple(symbol for symbol in SOLAR_1982 if symbol != "He")
 
-HYDROGEN_EDGE_KEV: Final = 0.013598
+HYDROGEN_EDGE_KEV: Final = 0.01359843
 HELIUM_EDGE_KEV: Final = 0.02458
 LOWEST_KEV: Final = 0.03
 HIGHEST_KEV: Final = 30.0
@@ -46,6 +46,7 @@ EDGE_WIDTH: Final = 1e-7
 _ACCURACY = 2e-4
 _EDGE_GAP_KEV = 0.0003
 _EDGE_JUMP = 1.1
+_EDGE_SLOPE = 50.0
 _ELECTRON_RADIUS_CM = 2.8179403e-13
 _WAVELENGTH_CM_KEV = 12.398420e-8
 
@@ -134,8 +135,9 @@ def _scattering_factor(symbol: str) -> tuple[Floats, Floats, Floats]:
     table = np.asarray(periodictable.elements.symbol(symbol).xray.sftable)
     # One atom has the energies of two rows of an edge exchanged.
     energies, factor = np.sort(table[0]), table[2]
-    jump = (np.diff(energies) < _EDGE_GAP_KEV) & (factor[1:] > _EDGE_JUMP * factor[:-1])
-    jump &= energies[:-1] > LOWEST_KEV
+    rise, width = np.diff(np.log(factor)), np.diff(np.log(energies))
+    jump = (np.diff(energies) < _EDGE_GAP_KEV) & (energies[:-1] > LOWEST_KEV)
+    jump &= (rise > np.log(_EDGE_JUMP)) & (rise > _EDGE_SLOPE * width)
     edges = 0.5 * (energies[:-1] + energies[1:])[jump]
     ends, begins = np.append(jump, False), np.insert(jump, 0, False)
     alone = ~(ends | begins)
