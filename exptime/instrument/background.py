@@ -40,7 +40,7 @@ def background_rates(
         Counts per second in each channel, and warnings; None when something is wrong.
     """
     group = values.group("background")
-    if group is None or group.text("file") == "none":
+    if group is None or not has_background(values):
         return None if edges is None else (np.zeros(len(edges) - 1), [])
     has_rate = group.is_given("rate") or group.is_given("photon_index")
     name, rate, index = group.text("file"), group.number("rate"), group.number("photon_index")
@@ -88,9 +88,13 @@ def background_knowledge(values: Values, faults: Faults) -> BackgroundKnowledge 
     """Return what a description says is known of the background; None when it is faulty."""
     group = values.group("background_knowledge")
     stated = BackgroundKnowledge(kind="unknown") if group is None else _stated(group, faults)
-    if not values.is_given("background"):
-        return BackgroundKnowledge(kind="known")
-    return stated
+    return stated if has_background(values) else BackgroundKnowledge(kind="known")
+
+
+def has_background(values: Values) -> bool:
+    """Say whether a description names a background at all."""
+    group = values.group("background")
+    return values.is_given("background") and (group is None or group.text("file") != "none")
 
 
 def _stated(group: Values, faults: Faults) -> BackgroundKnowledge | None:

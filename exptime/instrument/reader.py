@@ -15,7 +15,7 @@ from exptime.documents.files import beside
 from exptime.documents.values import Values
 from exptime.documents.yaml_reader import read_yaml
 from exptime.errors import Fault, ProfileError
-from exptime.instrument.background import background_knowledge, background_rates
+from exptime.instrument.background import background_knowledge, background_rates, has_background
 from exptime.instrument.curves import area_warnings, read_area
 from exptime.instrument.fields import INSTRUMENT_FIELDS
 from exptime.instrument.records import (
@@ -203,7 +203,7 @@ def _assumptions(values: Values) -> tuple[str, ...]:
         for field in INSTRUMENT_FIELDS
         if field.assumption and not values.is_given(field.key)
     ]
-    if values.is_given("background") and not values.is_given("background_knowledge"):
+    if has_background(values) and not values.is_given("background_knowledge"):
         sentences.append(
             "The background level is free in every channel: nothing was said of how well it is "
             "known."
