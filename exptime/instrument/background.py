@@ -78,9 +78,10 @@ def power_law_rates(rate_per_s: float, photon_index: float, edges_kev: Floats) -
     edges_kev : ndarray, shape (n + 1,)
         keV, positive.
     """
-    power = 1.0 - photon_index
-    primitive = np.log(edges_kev) if abs(power) < 1e-9 else edges_kev**power / power
-    share = np.diff(primitive)
+    power, ratio = 1.0 - photon_index, np.log(edges_kev[1:] / edges_kev[:-1])
+    # Smooth through g = 1, where each share is the logarithm of the ratio.
+    growth = ratio if power == 0.0 else np.expm1(power * ratio) / power
+    share = (edges_kev[:-1] / edges_kev[0]) ** power * growth
     return np.asarray(rate_per_s * share / share.sum())
 
 

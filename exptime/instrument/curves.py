@@ -204,7 +204,7 @@ def _of_bins(
             table.where(names[1], int(row)),
             "Correct the bounds.",
         )
-    gap = np.abs(low[1:] - high[:-1]) > 1e-3 * (high[1:] - low[1:])
+    gap = np.abs(low[1:] - high[:-1]) > 1e-3 * np.abs(high[1:] - low[1:])
     for row in np.flatnonzero(gap)[:5]:
         faults.add(
             f"the bin begins at {low[row + 1]:g} keV, the one before ends at {high[row]:g} keV.",

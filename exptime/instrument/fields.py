@@ -100,7 +100,7 @@ BACKGROUND: Final = Field(
         Field(
             key="rate",
             kind="quantity",
-            unit="s-1",
+            unit="ct s-1",
             meaning="Counts per second over the channels' band",
             example="0.3 s-1",
             minimum=0.0,
