@@ -10,7 +10,7 @@ from exptime.constants import SOLAR_MASS_KM, SPEED_OF_LIGHT_KM_S
 RAY_TABLE_MAX_U: Final = 0.56
 """Largest 2GM/(Rc²) in the table of rays; above 0.568 some points have two images."""
 
-RAY_TABLE_MAX_X: Final = 1.30
+RAY_TABLE_MAX_X: Final = 1.60
 """Largest (psi/psi_h)² in the table of rays, for the tilted surface of a fast oblate star."""
 
 MAX_COMPACTNESS_U: Final = 0.55

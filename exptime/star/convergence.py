@@ -18,6 +18,7 @@ from exptime.star.view import View, check_star, view_of
 _FEWEST_HARMONICS = 16
 _FEWEST_RINGS = 8
 _MOST_RINGS = 256
+_SPECTRUM_SHARE = 1e-3
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -104,11 +105,14 @@ def resolution_needed(
     accuracy : Accuracy
         What to reach.
     """
-    start = Resolution(
-        harmonics=_FEWEST_HARMONICS, rings=_FEWEST_RINGS, redshift_terms=1
-    )
+    start = Resolution(harmonics=_FEWEST_HARMONICS, rings=_FEWEST_RINGS, redshift_terms=1)
     rough = spot_moments(view, emission, spot, replace(start, harmonics=2))
-    terms = terms_needed(accuracy.energies_kev, spot.temperature_kev, rough.redshift_range)
+    terms = terms_needed(
+        accuracy.energies_kev,
+        spot.temperature_kev,
+        rough.redshift_range,
+        _SPECTRUM_SHARE * accuracy.tolerance,
+    )
     resolution = replace(start, redshift_terms=terms)
     while True:
         resolution, harmonics = _with_enough_rings(view, spot, emission, accuracy, resolution)

@@ -191,14 +191,13 @@ def joint_moments(
     )
     variable = (2.0 * kernels.redshift - (high + low)) / (high - low)
     basis = _chebyshev(variable, terms) * kernels.photons[..., None]
-    waves = _powers(np.exp(-1j * kernels.azimuth), harmonics)
-    real = np.ascontiguousarray(waves.real) @ basis
-    imaginary = np.ascontiguousarray(waves.imag) @ basis
+    cosine, sine = _waves(kernels.azimuth, harmonics)
+    real, imaginary = cosine @ basis, sine @ basis
     results, first = [], 0
     for rings in stacks:
         part = slice(first, first + len(rings.colatitude))
         factor = _extent(rings, harmonics)
-        values = np.einsum("rm,rmj->mj", factor, real[part]) + 1j * np.einsum(
+        values = np.einsum("rm,rmj->mj", factor, real[part]) - 1j * np.einsum(
             "rm,rmj->mj", factor, imaginary[part]
         )
         results.append(Moments(values, (low, high), not np.any(values)))
@@ -261,15 +260,23 @@ def _chebyshev(t: Floats, terms: int) -> Floats:
     return basis
 
 
-def _powers(base: Complexes, highest: int) -> Complexes:
-    """Return base**m for m = 0..highest on a new axis before the last, by doubling."""
-    powers = np.empty((base.shape[0], highest + 1, base.shape[1]), complex)
-    powers[:, 0] = 1.0
+def _waves(angle: Floats, highest: int) -> tuple[Floats, Floats]:
+    """Return cos(m angle) and sin(m angle), m = 0..highest on a new axis before the last.
+
+    By doubling: the sums of angles fill as many orders again as there are.
+    """
+    shape = (angle.shape[0], highest + 1, angle.shape[1])
+    cosine, sine = np.empty(shape), np.empty(shape)
+    cosine[:, 0], sine[:, 0] = 1.0, 0.0
     have = 1
-    power = base
     while have <= highest:
         take = min(have, highest + 1 - have)
-        np.multiply(powers[:, :take], power[:, None], out=powers[:, have : have + take])
-        power = power * power
+        step_cosine, step_sine = np.cos(have * angle)[:, None], np.sin(have * angle)[:, None]
+        old_cosine, old_sine = cosine[:, :take], sine[:, :take]
+        new = slice(have, have + take)
+        np.multiply(old_cosine, step_cosine, out=cosine[:, new])
+        cosine[:, new] -= old_sine * step_sine
+        np.multiply(old_sine, step_cosine, out=sine[:, new])
+        sine[:, new] += old_cosine * step_sine
         have *= 2
-    return powers
+    return cosine, sine

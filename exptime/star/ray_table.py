@@ -14,12 +14,7 @@ from numpy.polynomial import chebyshev
 
 from exptime._resources import shipped_table
 from exptime.arrays import Floats
-
-RAY_TABLE_MAX_U = 0.56
-"""Largest 2GM/(Rc²) in the table; above 0.568 some points have two images."""
-
-RAY_TABLE_MAX_X = 1.30
-"""Largest (psi/psi_h)² in the table, for the tilted surface of a fast oblate star."""
+from exptime.limits import RAY_TABLE_MAX_U, RAY_TABLE_MAX_X
 
 _NEGLIGIBLE = 2e-14
 _SMALLEST_Y = 1e-15
@@ -85,7 +80,7 @@ class RaySeries:
         Returns
         -------
         Bent
-            Arrays of shape (n_ring, n_node). Beyond X = 1.3 they are those of X = 1.3, where
+            Arrays of shape (n_ring, n_node). Beyond X = 1.6 they are those of X = 1.6, where
             no surface within the limits of the model is visible.
         """
         horizon = self.psi_horizon[:, None]

@@ -10,7 +10,6 @@ from exptime.arrays import Floats
 from exptime.star.emission import occupation
 
 _PROBE = 64
-_NEGLIGIBLE = 1e-10
 
 
 @cache
@@ -52,9 +51,12 @@ def planck_coefficients(
 
 
 def terms_needed(
-    energies_kev: Floats, temperature_kev: float, redshift_range: tuple[float, float]
+    energies_kev: Floats,
+    temperature_kev: float,
+    redshift_range: tuple[float, float],
+    negligible: float = 1e-10,
 ) -> int:
-    """Return how many Chebyshev terms bring the spectrum to 1e-10 of its largest coefficient.
+    """Return how many Chebyshev terms of the spectrum are not negligible.
 
     Parameters
     ----------
@@ -64,8 +66,10 @@ def terms_needed(
         Lowest temperature of the spots, keV.
     redshift_range : tuple of float
         Interval of the redshift factor.
+    negligible : float
+        Share of the largest coefficient below which the rest may be left out.
     """
     ends = np.array([np.min(energies_kev), np.max(energies_kev)])
     series = np.abs(planck_coefficients(ends, temperature_kev, redshift_range, _PROBE))
-    large = np.any(series > _NEGLIGIBLE * series.max(axis=0), axis=1)
+    large = np.any(series > negligible * series.max(axis=0), axis=1)
     return _PROBE - int(np.argmax(large[::-1]))

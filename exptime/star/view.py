@@ -9,9 +9,9 @@ import numpy as np
 
 from exptime.arrays import Floats
 from exptime.errors import Fault, OutOfRangeError
-from exptime.limits import MAX_COMPACTNESS_U
+from exptime.limits import MAX_COMPACTNESS_U, RAY_TABLE_MAX_X
 from exptime.star.figure import radius_km, tilt
-from exptime.star.ray_table import RAY_TABLE_MAX_X, RayTable, load_ray_table
+from exptime.star.ray_table import RayTable, load_ray_table
 from exptime.star.rays import deflection
 from exptime.star.records import Star
 from exptime.star.surface import visibility_transitions

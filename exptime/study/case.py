@@ -31,8 +31,8 @@ from exptime.star.view import view_of
 from exptime.study.records import Goal
 from exptime.target.records import Target
 
-_TOLERANCE = 3e-6
-_MOST_HARMONICS = 256
+_TOLERANCE = 2e-5
+_MOST_HARMONICS = 128
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -13,12 +13,12 @@ from pathlib import Path
 import numpy as np
 
 from exptime.arrays import Floats
-from exptime.star.ray_table import RAY_TABLE_MAX_U, RAY_TABLE_MAX_X
+from exptime.limits import RAY_TABLE_MAX_U, RAY_TABLE_MAX_X
 from exptime.star.rays import deflection_of_angle, delay_of_angle
 
 COEFFICIENTS_X = 48
 COEFFICIENTS_U = 44
-_STEEPEST = np.pi / 2 + 0.35
+_STEEPEST = np.pi / 2 + 0.45
 
 
 def chebyshev_points(count: int, lower: float, upper: float) -> Floats:
