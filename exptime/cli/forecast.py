@@ -42,7 +42,7 @@ def add_parser(commands: argparse._SubParsersAction[argparse.ArgumentParser]) ->
         action="append",
         metavar="GOAL",
         default=[],
-        help='wanted precision such as "radius 5%%", also of mass or compactness; repeatable '
+        help='wanted precision such as "mass 10%%"; mass, radius or compactness, repeatable (default radius 5%%) '
         "(default radius 5%%)",
     )
     parser.add_argument(
@@ -63,7 +63,7 @@ def run(arguments: argparse.Namespace) -> None:
     from exptime.api import DEFAULT_GOALS
     from exptime.cli.delivery import deliver, refuse_output
     from exptime.cli.gathering import Gathering
-    from exptime.cli.options import read_exposures, read_goal, read_margin, read_whole, with_unit
+    from exptime.cli.options import read_exposures, read_goal, read_margin, read_whole
     from exptime.cli.progress_bar import progress_bar
     from exptime.quantities import to_quantity
 

@@ -13,8 +13,9 @@ QUANTITY_NAMES: Final = ("mass", "radius", "compactness")
 RANGE_POINTS: Final = 13
 """Exposures in a range A..B."""
 
-LONGEST_EXPOSURE_S: Final = 1e9
-"""Thirty years; what lies beyond is a slip of the unit."""
+SHORTEST_EXPOSURE_S: Final = 1.0
+LONGEST_EXPOSURE_S: Final = 1e8
+"""Three years; what lies beyond is a slip of the unit."""
 
 _MOST_VALUES: Final = 1000
 _GOAL: Final = re.compile(r"\s*(\w+)[\s:=]+(\S.*?)\s*")
@@ -32,7 +33,7 @@ def read_exposures(text: str) -> tuple[float, ...]:
     Raises
     ------
     InputError
-        When it cannot be read or an exposure is not above zero and below thirty years.
+        When it cannot be read or an exposure is not between 1 s and 1e8 s.
 
     Examples
     --------
@@ -63,8 +64,8 @@ def read_exposure(text: str) -> float:
 
 def _check_exposures(exposures: tuple[float, ...], text: str, remedy: str) -> None:
     for exposure in exposures:
-        if not 0.0 < exposure <= LONGEST_EXPOSURE_S:
-            what = f"{text!r} is not above zero and at most {LONGEST_EXPOSURE_S:g} s."
+        if not SHORTEST_EXPOSURE_S <= exposure <= LONGEST_EXPOSURE_S:
+            what = f"{text!r} is not between 1 s and 1e8 s."
             raise InputError(Fault(what, "", remedy))
 
 

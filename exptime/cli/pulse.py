@@ -90,7 +90,7 @@ def _flux(arguments: argparse.Namespace, gathering: Gathering) -> Callable[..., 
     from functools import partial
 
     import exptime
-    from exptime.cli.options import read_energies, read_whole, with_unit
+    from exptime.cli.options import read_energies, read_whole
     from exptime.quantities import to_quantity
 
     written = DEFAULT_ENERGIES if arguments.energies is None else arguments.energies
@@ -107,7 +107,7 @@ def _counts(arguments: argparse.Namespace, gathering: Gathering) -> Callable[...
     from functools import partial
 
     import exptime
-    from exptime.cli.options import read_exposure, read_whole, with_unit
+    from exptime.cli.options import read_exposure, read_whole
     from exptime.quantities import to_quantity
 
     exposure = gathering.read("--exposure", read_exposure, arguments.exposure or MISSING_EXPOSURE)

@@ -8,6 +8,7 @@ from dataclasses import dataclass, field
 from pathlib import Path
 from typing import Any
 
+import numpy as np
 import pytest
 
 import exptime
@@ -58,6 +59,18 @@ class Science:
         return Answer(name)
 
 
+@dataclass(frozen=True)
+class Numbers:
+    """Equal to a Quantity of exactly these numbers in this unit."""
+
+    numbers: float | tuple[float, ...]
+    unit: str
+
+    def __eq__(self, other: object) -> bool:
+        unit, value = getattr(other, "unit", None), getattr(other, "value", None)
+        return str(unit) == self.unit and np.array_equal(np.asarray(value), self.numbers)
+
+
 @pytest.fixture
 def science(monkeypatch: pytest.MonkeyPatch, empty_folder: Path) -> Science:
     """Put stand-ins in the place of the public functions, in an empty folder."""
@@ -84,7 +97,7 @@ def test_forecast_passes_every_option_on(science: Science) -> None:
         "forecast",
         ("read_target(a.yaml)", "read_instrument(soft)"),
         {
-            "exposures": (3e5, 1e6),
+            "exposures": Numbers((3e5, 1e6), "s"),
             "goals": [("radius", 0.05), ("mass", 0.1)],
             "margin": pytest.approx(0.15),
             "draws": 64,
@@ -97,13 +110,13 @@ def test_forecast_passes_every_option_on(science: Science) -> None:
 
 
 def test_forecast_has_the_documented_defaults(science: Science) -> None:
-    """13 exposures from 100 ks to 3 Ms, 128 draws, seed 1, usable cores."""
+    """13 exposures from 100 ks to 3 Ms, 5 % in radius, 128 draws, seed 1, usable cores."""
     run(*FORECAST)
     options = science.calls[-1][2]
     assert len(options["exposures"]) == 13
     assert (options["draws"], options["seed"], options["margin"]) == (128, 1, 0.0)
     assert options["jobs"] == len(os.sched_getaffinity(0))
-    assert options["goals"] == []
+    assert list(options["goals"]) == [("radius", 0.05)]
     assert not options["fixed_star"]
 
 
@@ -236,7 +249,8 @@ def test_pulse_takes_energies_and_phases(science: Science) -> None:
     assert shown == Run(0, "pulse at 80 columns\n", "")
     name, arguments, options = science.calls[-1]
     assert (name, arguments) == ("pulse", ("read_target(-)",))
-    assert (options["energies"], options["phases"]) == ((0.3, 0.5, 1.0), 16)
+    assert options["energies"] == Numbers((0.3, 0.5, 1.0), "keV")
+    assert options["phases"] == 16
 
 
 def test_pulse_with_an_instrument_gives_expected_counts(science: Science) -> None:
@@ -244,8 +258,8 @@ def test_pulse_with_an_instrument_gives_expected_counts(science: Science) -> Non
     shown = run("pulse", "a.yaml", "-i", "soft", "--exposure", "300ks", "--format", "json")
     assert shown == Run(0, '{"answer": "expected_counts"}\n', "")
     _, arguments, options = science.calls[-1]
-    assert arguments == ("read_target(a.yaml)", "read_instrument(soft)", 3e5)
-    assert "phases" not in options
+    assert arguments == ("read_target(a.yaml)", "read_instrument(soft)", Numbers(3e5, "s"))
+    assert options.get("phases") is None
     assert "energies" not in options
 
 
