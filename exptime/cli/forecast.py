@@ -42,7 +42,7 @@ def add_parser(commands: argparse._SubParsersAction[argparse.ArgumentParser]) ->
         action="append",
         metavar="GOAL",
         default=[],
-        help='wanted precision such as "mass 10%%"; mass, radius or compactness, repeatable (default radius 5%%) '
+        help='wanted precision such as "mass 10%%"; mass, radius or compactness, repeatable '
         "(default radius 5%%)",
     )
     parser.add_argument(
