@@ -59,7 +59,8 @@ def noisy_pulsed_fraction(
     Notes
     -----
     Extremes: expected largest and smallest of independent normal bins with Poisson variances.
-    rms and first harmonic: noise adds in square.
+    rms and first harmonic: noise adds in square, to the rms the part of it that the mean of the
+    bins does not take up.
     """
     mean = float(harmonics[0].real)
     if mean <= 0.0:
@@ -67,7 +68,8 @@ def noisy_pulsed_fraction(
     expected = np.maximum(bin_averages(harmonics, bins), 0.0) / mean * counts / bins
     average = counts / bins
     if definition == "rms":
-        return math.sqrt(float(np.var(expected)) / average**2 + 1.0 / average)
+        noise = (1.0 - 1.0 / bins) / average
+        return math.sqrt(float(np.var(expected)) / average**2 + noise)
     if definition == "first-harmonic":
         wave = np.exp(-2j * np.pi * (np.arange(bins) + 0.5) / bins)
         amplitude = 2.0 * abs(complex(wave @ expected)) / counts
