@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from decimal import ROUND_CEILING, ROUND_HALF_EVEN, Decimal
+from decimal import ROUND_HALF_EVEN, Decimal
 from typing import Final
 
 UNCONSTRAINED: Final = "unconstrained"
@@ -82,7 +82,11 @@ def precision(sigma: float, value: float) -> str:
     """Return an uncertainty relative to its value, such as ``"3.4 %"``."""
     if math.isnan(sigma) or math.isnan(value) or value == 0.0:
         return UNKNOWN
-    return UNCONSTRAINED if is_hopeless(sigma, value) else f"{percent(sigma / abs(value))} %"
+    return (
+        UNCONSTRAINED
+        if is_hopeless(sigma, value)
+        else f"{significant(100.0 * sigma / abs(value), 2)} %"
+    )
 
 
 def percent(fraction: float, digits: int = 2) -> str:
@@ -112,16 +116,15 @@ def share_number(fraction: float) -> str:
     )
 
 
-def duration(seconds: float, *, is_required: bool = False) -> str:
+def duration(seconds: float, digits: int = 3) -> str:
     """Return a time with its natural unit, such as ``"1.2 Ms"``.
 
     Parameters
     ----------
     seconds : float
         Infinite where a goal is not reached.
-    is_required : bool
-        Round upwards, to two digits: a little more does what is needed, a little less does not.
-        Otherwise three digits, to the nearest.
+    digits : int
+        Significant digits, to the nearest.
     """
     if math.isnan(seconds):
         return UNKNOWN
@@ -129,8 +132,7 @@ def duration(seconds: float, *, is_required: bool = False) -> str:
         return NOT_REACHED
     if seconds <= 0.0:
         return "0 s"
-    rounded = _ceiling(seconds, 2) if is_required else float(f"{seconds:.2e}")
-    return _with_time_unit(rounded)
+    return _with_time_unit(float(f"{seconds:.{digits - 1}e}"))
 
 
 def requested_time(seconds: float) -> str:
@@ -162,13 +164,6 @@ def _to_places(number: float, places: int) -> str:
     """Round half to even at a decimal place, counted left of the point where negative."""
     rounded = Decimal(repr(number)).quantize(Decimal(1).scaleb(-places), ROUND_HALF_EVEN)
     return f"{rounded:f}"
-
-
-def _ceiling(number: float, digits: int) -> float:
-    """Round upwards to so many digits; what a float cannot hold does not count."""
-    exact = Decimal(f"{number:.12e}")
-    step = Decimal(1).scaleb(exact.adjusted() - digits + 1)
-    return float((exact / step).to_integral_value(ROUND_CEILING) * step)
 
 
 def _with_time_unit(seconds: float) -> str:

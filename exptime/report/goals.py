@@ -15,6 +15,7 @@ from exptime.study.records import Forecast, Goal, GoalResult
 DEFAULT_GOAL: Final = Goal(quantity="radius", precision=0.05)
 LONGEST_EXPOSURE_S: Final = 1e8
 _SHORTEST_EXPOSURE_S: Final = 1.0
+_HAIR: Final = 1.001
 _QUANTILES: Final = np.array([0.16, 0.50, 0.84])
 
 
@@ -53,11 +54,21 @@ class Cost:
         return float(self.weights[self.required_s <= exposure_s * (1.0 + 1e-12)].sum())
 
     @property
+    def is_ever_reached(self) -> bool:
+        """Whether any geometry reaches the goal in the range looked at."""
+        return bool(np.isfinite(self.required_s).any())
+
+    @property
+    def is_met_beforehand(self) -> bool:
+        """Whether what is known already meets the goal for every geometry."""
+        return self.share_beforehand >= 1.0 - 1e-9
+
+    @property
     def share_beforehand(self) -> float:
         """Share of the geometries for which what is known already meets the goal."""
-        if self.shortest_s > _SHORTEST_EXPOSURE_S:
+        if not self.is_asked:
             return 0.0
-        return float(self.weights[self.required_s <= self.shortest_s].sum())
+        return float(self.weights[self.required_s <= self.shortest_s * _HAIR].sum())
 
 
 def costs(forecast: Forecast) -> tuple[Cost, ...]:

@@ -1,0 +1,216 @@
+"""Results as text of so many columns, whole when piped."""
+
+from __future__ import annotations
+
+import io
+from collections.abc import Iterable
+from typing import TYPE_CHECKING
+
+from exptime.report.background import limits, method
+from exptime.report.digits import duration, significant
+from exptime.report.feasibility import feasibility
+from exptime.report.sentences import CAUTION, answers, notes_on_goals
+from exptime.report.tables import (
+    Facts,
+    Table,
+    fixed_quantities,
+    geometry_facts,
+    goals_table,
+    precision_tables,
+    rate_facts,
+    reading,
+    run_facts,
+)
+from exptime.report.words import printable
+from exptime.study.records import Counts, Forecast, Pulse
+
+if TYPE_CHECKING:
+    from rich.console import RenderableType
+
+_COLUMN_WIDTH = 11
+_FIRST_COLUMN_WIDTH = 10
+
+
+def forecast_text(forecast: Forecast, width: int = 80) -> str:
+    """Return a forecast as text, the answer first.
+
+    Parameters
+    ----------
+    forecast : Forecast
+        The answer of the main job.
+    width : int
+        Columns that no line exceeds.
+    """
+    target = printable(forecast.target.name)
+    names = " and ".join(printable(each.name) for each in forecast.instruments)
+    parts: list[RenderableType] = [
+        *_paragraphs(answers(forecast)),
+        *_paragraphs([f"Target: {target}. Instrument: {names}."]),
+        *_list("Warnings", forecast.warnings),
+        *_table(goals_table(forecast)),
+    ]
+    for table in precision_tables(forecast):
+        parts += _table(table)
+    parts += _paragraphs(
+        [*fixed_quantities(forecast), *notes_on_goals(forecast), reading(forecast)]
+    )
+    parts += [
+        *_facts("Geometry", geometry_facts(forecast)),
+        *_facts("Counts", rate_facts(forecast)),
+        *_list("Assumed", forecast.assumptions),
+        *_list("How it was computed", method(forecast)),
+        *_list("What could be wrong", limits(forecast)),
+        *_heading("For the feasibility section"),
+        *_paragraphs([feasibility(forecast)]),
+        *_facts("This run", run_facts(forecast)),
+        *_heading("Whose word counts"),
+        *_paragraphs([CAUTION]),
+    ]
+    return _render(parts, width)
+
+
+def pulse_text(pulse: Pulse, width: int = 80) -> str:
+    """Return photon flux against phase and energy as a table.
+
+    Parameters
+    ----------
+    pulse : Pulse
+        The pulse; energies that do not fit side by side follow below.
+    width : int
+        Columns that no line exceeds.
+    """
+    title = f"Photon flux of {printable(pulse.target)} at the observer, without the column, in "
+    title += "photons cm⁻² s⁻¹ keV⁻¹, averaged over each phase bin"
+    parts = _paragraphs([title])
+    for columns in _blocks(len(pulse.energies_kev), width):
+        parts += _table(
+            Table(
+                caption="",
+                header=("phase", *(f"{pulse.energies_kev[each]:.4g} keV" for each in columns)),
+                rows=tuple(
+                    (f"{phase:.6f}", *(f"{row[each]:.4e}" for each in columns))
+                    for phase, row in zip(pulse.phase, pulse.photon_flux, strict=True)
+                ),
+            )
+        )
+    return _render([*parts, *_list("Notes", pulse.notes)], width)
+
+
+def counts_text(counts: Counts, width: int = 80) -> str:
+    """Return expected counts: summed over energy for each phase bin, and over phase.
+
+    Parameters
+    ----------
+    counts : Counts
+        Expected counts; every cell stands in the JSON document.
+    width : int
+        Columns that no line exceeds.
+    """
+    source, background = counts.source_counts, counts.background_counts
+    edges = counts.channel_edges_kev
+    title = (
+        f"Expected counts of {printable(counts.target)} in {printable(counts.instrument)}, "
+        f"{duration(counts.exposure_s)}: {significant(float(source.sum()), 4)} of the source over "
+        f"{significant(float(background.sum()), 4)} of the background in "
+        f"{edges[0]:.3g}-{edges[-1]:.3g} keV. Each cell of phase and channel stands in the JSON "
+        "document (--format json)."
+    )
+    by_phase = Table(
+        caption="By phase, summed over channels",
+        header=("phase", "source", "background"),
+        rows=tuple(
+            (f"{phase:.6f}", f"{own:.5g}", f"{other:.5g}")
+            for phase, own, other in zip(
+                counts.phase, source.sum(axis=1), background.sum(axis=1), strict=True
+            )
+        ),
+    )
+    by_channel = Table(
+        caption="By channel, summed over phase",
+        header=("channel (keV)", "source", "background"),
+        rows=tuple(
+            (f"{low:.4g} - {high:.4g}", f"{own:.5g}", f"{other:.5g}")
+            for low, high, own, other in zip(
+                edges[:-1], edges[1:], source.sum(axis=0), background.sum(axis=0), strict=True
+            )
+        ),
+    )
+    parts = [*_paragraphs([title]), *_table(by_phase), *_table(by_channel)]
+    return _render([*parts, *_list("Notes", counts.notes)], width)
+
+
+def _blocks(count: int, width: int) -> list[range]:
+    """Return which columns stand side by side."""
+    size = max(1, (width - _FIRST_COLUMN_WIDTH) // (_COLUMN_WIDTH + 2))
+    return [range(start, min(start + size, count)) for start in range(0, count, size)]
+
+
+def _heading(title: str) -> list[RenderableType]:
+    from rich.text import Text
+
+    return [Text(title), Text("─" * len(title))]
+
+
+def _paragraphs(sentences: Iterable[str]) -> list[RenderableType]:
+    from rich.text import Text
+
+    return [part for sentence in sentences for part in (Text(printable(sentence)), Text(""))]
+
+
+def _list(title: str, sentences: Iterable[str]) -> list[RenderableType]:
+    from rich.table import Table as Grid
+    from rich.text import Text
+
+    grid = Grid.grid(padding=(0, 1, 0, 0))
+    grid.add_column()
+    grid.add_column(overflow="fold")
+    for sentence in sentences:
+        grid.add_row(Text("-"), Text(printable(sentence)))
+    return [*_heading(title), grid, Text("")] if grid.row_count else []
+
+
+def _facts(title: str, facts: Facts) -> list[RenderableType]:
+    from rich.table import Table as Grid
+    from rich.text import Text
+
+    grid = Grid.grid(padding=(0, 2, 0, 0))
+    grid.add_column(overflow="fold", max_width=28)
+    grid.add_column(overflow="fold")
+    for label, value in facts:
+        grid.add_row(Text(printable(label)), Text(printable(value)))
+    return [*_heading(title), grid, Text("")]
+
+
+def _table(table: Table) -> list[RenderableType]:
+    from rich import box
+    from rich.table import Table as Grid
+    from rich.text import Text
+
+    grid = Grid(box=box.SIMPLE_HEAD, show_edge=False, pad_edge=False, padding=(0, 1))
+    for index, title in enumerate(table.header):
+        is_word = index == 0 or title == "remark"
+        grid.add_column(Text(title), justify="left" if is_word else "right", overflow="fold")
+    for row in table.rows:
+        grid.add_row(*(Text(printable(cell)) for cell in row))
+    caption = [Text(table.caption), Text("")] if table.caption else []
+    return [*caption, grid, Text("")]
+
+
+def _render(parts: Iterable[RenderableType], width: int) -> str:
+    from rich.console import Console
+
+    stream = io.StringIO()
+    console = Console(
+        file=stream,
+        width=width,
+        force_terminal=False,
+        color_system=None,
+        highlight=False,
+        markup=False,
+        emoji=False,
+        legacy_windows=False,
+    )
+    for part in parts:
+        console.print(part)
+    lines = [line.rstrip() for line in stream.getvalue().splitlines()]
+    return "\n".join(lines).rstrip() + "\n"
