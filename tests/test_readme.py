@@ -2,7 +2,10 @@
 
 from __future__ import annotations
 
+import doctest
 import re
+
+import pytest
 
 from exptime.cli.parser import COMMANDS, build_parser
 from tests.makers.readme import README, with_keys
@@ -27,3 +30,14 @@ def test_every_option_is_listed() -> None:
         for action in group.choices[name]._actions:  # type: ignore[index,call-overload]
             for option in action.option_strings[-1:]:
                 assert option in (*re.findall(r"--[\w-]+", listed), "--help", "--instrument")
+
+
+@pytest.mark.slow
+def test_the_examples_of_the_interface_are_true() -> None:
+    """The section on Python runs as a doctest."""
+    section = TEXT.split("<!-- api -->")[1].split("<!-- end of api -->")[0]
+    examples = doctest.DocTestParser().get_doctest(section, {}, "README", str(README), 0)
+    assert len(examples.examples) >= 5
+    runner = doctest.DocTestRunner(optionflags=doctest.ELLIPSIS | doctest.NORMALIZE_WHITESPACE)
+    runner.run(examples)
+    assert runner.summarize(verbose=False).failed == 0
