@@ -142,9 +142,15 @@ def photons_emitted(star: Star, spot: HotSpot) -> float:
     return per_area * area * math.sqrt(1.0 - 2.0 * star.compactness)
 
 
-@pytest.mark.parametrize("spin_hz", [0.01, 300.0, 700.0])
 @pytest.mark.parametrize(
-    ("colatitude", "radius"), [(1.3, 0.3), (0.3, 0.5)], ids=["by the equator", "over the pole"]
+    ("spin_hz", "colatitude", "radius"),
+    [
+        (0.01, 1.3, 0.3),
+        (300.0, 1.3, 0.3),
+        (700.0, 1.3, 0.3),
+        (300.0, 0.3, 0.5),  # over the pole
+        pytest.param(700.0, 0.3, 0.5, marks=pytest.mark.slow),
+    ],
 )
 def test_every_photon_of_a_spinning_sphere_crosses_the_sky(
     spin_hz: float, colatitude: float, radius: float
@@ -209,8 +215,10 @@ def budget_of_an_oblate_spot(star: Star, spot: HotSpot) -> tuple[float, float]:
 
 @pytest.mark.parametrize(
     ("colatitude", "radius", "emission"),
-    [(0.8, 0.4, DARKENED), (1.5, 0.3, BLACKBODY)],
-    ids=["darkened, tilted", "by the equator"],
+    [
+        pytest.param(0.8, 0.4, DARKENED, marks=pytest.mark.slow, id="darkened, tilted"),
+        pytest.param(1.5, 0.3, BLACKBODY, id="by the equator"),
+    ],
 )
 def test_budget_of_a_spinning_oblate_star(
     colatitude: float, radius: float, emission: Emission
