@@ -18,6 +18,7 @@ _REACH_SIGMA = 8.0
 _WIDEST_SIGMA = 1.5
 _WIDEST_RELATIVE = 0.1
 _FINE_SIGMA = (0.2, 0.7)
+_LARGEST_MATRIX = 40_000_000
 
 
 def area_cm2(area: EffectiveArea, energies_kev: Floats) -> Floats:
@@ -161,10 +162,17 @@ def photon_nodes(instrument: Instrument, cuts_kev: Floats) -> tuple[Floats, Floa
         keV, increasing. Good to 3e-6 of the highest channel (measured) for thermal spectra
         behind columns up to 1e21 cm^-2, to 3e-5 at 1e22 cm^-2. Rows of the area that are
         narrow against the redistribution get two nodes, wider pieces three or four.
+
+    Raises
+    ------
+    ProfileError
+        When no photon reaches a channel, or nodes times channels would not fit into memory.
     """
     points = photon_breakpoints(instrument)
     cuts = cuts_kev[(cuts_kev > points[0]) & (cuts_kev < points[-1])]
-    bounds = np.unique(np.concatenate([points, cuts]))
+    # A long row of the area is cut at octaves first, so that its lower end decides for one alone.
+    octaves = points[0] * 2.0 ** np.arange(1, max(1.0, math.log2(points[-1] / points[0])))
+    bounds = np.unique(np.concatenate([points, cuts, octaves]))
     low, width = bounds[:-1], np.diff(bounds)
     widest = _WIDEST_RELATIVE * low
     sigma = widest
@@ -172,12 +180,26 @@ def photon_nodes(instrument: Instrument, cuts_kev: Floats) -> tuple[Floats, Floa
         sigma = sigma_kev(instrument.redistribution, low)
         widest = np.minimum(widest, _WIDEST_SIGMA * sigma)
     parts = np.maximum(1, np.ceil(width / widest - 1e-9)).astype(int)
+    _refuse_large(instrument, 2 * int(parts.sum()))
     step = np.repeat(width / parts, parts)
     first = np.repeat(np.cumsum(parts) - parts, parts)
     middle = np.repeat(low, parts) + step * (np.arange(len(step)) - first + 0.5)
     relative = step / np.repeat(sigma, parts)
     order = 2 + np.searchsorted(_FINE_SIGMA, relative)
+    _refuse_large(instrument, int(order.sum()))
     return _gauss(middle, 0.5 * step, order)
+
+
+def _refuse_large(instrument: Instrument, nodes: int) -> None:
+    channels = len(instrument.channel_edges_kev) - 1
+    if nodes * channels > _LARGEST_MATRIX:
+        raise ProfileError(
+            Fault(
+                f"{nodes} photon energies to {channels} channels are too many to fold.",
+                instrument.id,
+                "Give wider channels, or a redistribution that is wider or perfect.",
+            )
+        )
 
 
 def _gauss(middle: Floats, half: Floats, order: NDArray[np.int_]) -> tuple[Floats, Floats]:

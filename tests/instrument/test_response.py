@@ -243,3 +243,21 @@ def test_area_at_a_step_takes_either_side() -> None:
         source="",
     )
     np.testing.assert_array_equal(area_cm2(area, np.array([1.9999, 2.0001])), [5.0, 9.0])
+
+
+def test_long_rows_and_low_energies_keep_the_nodes_few() -> None:
+    """A table of two rows over six decades under a wide law that reaches far down."""
+    redistribution = Redistribution(fwhm_kev=1.0, at_kev=1.0, law="sqrt")
+    instrument = bench(redistribution, np.array([0.03, 1.0, 20.0]), (1e-5, 70.0), (50.0, 50.0))
+    nodes, weights = photon_nodes(instrument, NO_CUTS)
+    assert nodes[0] < 1e-3
+    assert len(nodes) < 1000
+    assert weights.sum() == pytest.approx(np.subtract(*photon_range(instrument)[::-1]), rel=1e-12)
+
+
+def test_fold_too_large_for_memory_is_refused() -> None:
+    """A width of a millionth of an electronvolt, before anything of that size is made."""
+    redistribution = Redistribution(fwhm_kev=1e-9, at_kev=1.0, law="constant")
+    instrument = bench(redistribution, np.linspace(0.3, 6.3, 4001))
+    with pytest.raises(ProfileError, match="too many to fold"):
+        photon_nodes(instrument, NO_CUTS)
