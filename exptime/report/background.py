@@ -32,12 +32,12 @@ REFERENCES: Final = (
     Reference(
         words="Pechenick, Ftaclas & Cohen 1983, ApJ 274, 846",
         serves="light bending around a neutron star",
-        link="https://doi.org/10.1086/161498",
+        link="https://ui.adsabs.harvard.edu/abs/1983ApJ...274..846P",
     ),
     Reference(
         words="Poutanen & Beloborodov 2006, MNRAS 373, 836",
         serves="pulses of spinning stars: Doppler shift, aberration, delays",
-        link="https://arxiv.org/abs/astro-ph/0608663",
+        link="https://ui.adsabs.harvard.edu/abs/2006MNRAS.373..836P",
     ),
     Reference(
         words="Morsink, Leahy, Cadeau & Braga 2007, ApJ 663, 1244",
@@ -62,6 +62,7 @@ REFERENCES: Final = (
     Reference(
         words="Yan, Sadeghpour & Dalgarno 1998, ApJ 496, 1044",
         serves="absorption by helium",
+        link="https://ui.adsabs.harvard.edu/abs/1998ApJ...496.1044Y",
     ),
     Reference(
         words="Rao 1945, Bull. Calcutta Math. Soc. 37, 81; Cramér 1946, Mathematical Methods of "

@@ -107,7 +107,7 @@ def shares_table(forecast: Forecast) -> Table:
 def reading(forecast: Forecast) -> str:
     """Return how the tables of precision are read."""
     median = "" if forecast.is_geometry_known else "median over the geometries, "
-    spread = "" if forecast.is_geometry_known else ", with its 16-84 per cent range"
+    spread = "" if forecast.is_geometry_known else ", with its 16–84 per cent range"
     return (
         f"data sigma: {median}from the data and every measured constraint{spread}; sigma: "
         f"{median}with the flat priors on mass and radius as well. {PRIOR_LIMITED}: what was known "
@@ -122,6 +122,26 @@ def fixed_quantities(forecast: Forecast) -> tuple[str, ...]:
         for quantity in SHOWN
         if forecast.curve(quantity).prior_sigma == 0.0
     )
+
+
+def key_facts(forecast: Forecast) -> Facts:
+    """Return the few numbers that a reader looks for first."""
+    cost = costs(forecast)[0]
+    requested = requested_exposure_s(forecast)
+    pairs: list[tuple[str, str]] = []
+    if forecast.is_geometry_known:
+        pairs.append((f"{_goal(cost)} takes", _time(cost, cost.p50, 3)))
+    else:
+        pairs += [
+            (f"{_goal(cost)}, half of the geometries", _time(cost, cost.p50)),
+            ("84 per cent of them", _time(cost, cost.p84)),
+            (f"reach it by {duration(requested)}", share_number(cost.share_by(requested))),
+        ]
+    signal = (
+        f"{significant(forecast.source_per_s, 3)} / {significant(forecast.background_per_s, 3)}"
+    )
+    pairs.append(("source / background, counts/s", signal))
+    return tuple(pairs)
 
 
 def geometry_facts(forecast: Forecast) -> Facts:
@@ -192,8 +212,8 @@ def _precision_table(forecast: Forecast, quantity: QuantityName) -> Table:
     title = f"{NAMES[quantity][0].upper()}{NAMES[quantity][1:]}"
     caption = f"{title}: one sigma" + (f" in {unit}" if unit else "")
     caption += f", at {with_unit(significant(value, 3), quantity)}"
-    spread_header = () if forecast.is_geometry_known else ("16-84 %",)
-    rows = []
+    spread_header = () if forecast.is_geometry_known else ("16–84 %",)
+    rows: list[tuple[str, ...]] = []
     for index in shown_exposures(forecast):
         low, middle, high = (
             float(each[index])
@@ -210,7 +230,16 @@ def _precision_table(forecast: Forecast, quantity: QuantityName) -> Table:
                 PRIOR_LIMITED if curve.is_prior_limited[index] else "",
             )
         )
-    header = ("exposure", "data sigma", "relative", *spread_header, "sigma", "remark")
+    header: tuple[str, ...] = (
+        "exposure",
+        "data sigma",
+        "relative",
+        *spread_header,
+        "sigma",
+        "remark",
+    )
+    if not any(curve.is_prior_limited[index] for index in shown_exposures(forecast)):
+        header, rows = header[:-1], [row[:-1] for row in rows]
     return Table(caption=caption, header=header, rows=tuple(rows))
 
 
@@ -220,7 +249,7 @@ def _goal(cost: Cost) -> str:
 
 def _time(cost: Cost, seconds: float, digits: int = 2) -> str:
     if cost.is_met_beforehand:
-        return "known before"
+        return "none"
     if math.isinf(seconds):
         return f"> {duration(cost.longest_s)}"
     return duration(seconds, digits)
@@ -228,7 +257,7 @@ def _time(cost: Cost, seconds: float, digits: int = 2) -> str:
 
 def _sigma_range(low: float, high: float, value: float) -> str:
     first, last = uncertainty(low, value), uncertainty(high, value)
-    return first if first == last else f"{first} - {last}"
+    return first if first == last else f"{first}–{last}"
 
 
 def _range(low: float, middle: float, high: float, digits: int) -> str:

@@ -62,7 +62,7 @@ def test_tables_show_the_numbers_of_the_record() -> None:
     lines = forecast_text(results.normal(), 80).splitlines()
     # At 1 Ms the geometries run evenly in logarithm from 0.15 to 3.0 km: median 0.67 km.
     assert next(line.split() for line in lines if line.startswith("1 Ms")) == [
-        *("1", "Ms", "0.67", "5.6", "%", "0.24", "-", "1.9", "0.64")
+        *("1", "Ms", "0.67", "5.6", "%", "0.24–1.9", "0.64")
     ]
     assert any(line.split()[:3] == ["radius", "5", "%"] for line in lines)
 
