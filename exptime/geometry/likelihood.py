@@ -103,15 +103,15 @@ def _folded_misfit(shape: FoldedShape, harmonics: Complexes) -> Floats:
     """Return chi² of a folded profile at each trial shift, the mean fitted to the data."""
     mean = float(harmonics[0].real)
     bins, order = len(shape.counts), np.arange(len(harmonics))
+    source = shape.counts - shape.background_per_bin
     if mean <= 0.0:
-        return np.full(_SHIFTS, float(np.sum((shape.counts / shape.error) ** 2)))
+        return np.full(_SHIFTS, float(np.sum((source / shape.error) ** 2)))
     # Bin averages on a grid that begins at the profile's own first bin.
     start = shape.phase[0] - 0.5 / bins
     offset = np.arange(_SHIFTS) / _SHIFTS + start
     shifted = harmonics / mean * np.exp(2j * np.pi * np.outer(offset, order))
     waves = bin_waves(len(harmonics) - 1, bins)
     curves = (shifted @ waves.T).real
-    source = shape.counts - shape.background_per_bin
     weight = shape.error**-2
     level = (curves * weight) @ source / (curves**2 @ weight)
     return np.asarray((source - level[:, None] * curves) ** 2 @ weight)

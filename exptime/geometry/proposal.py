@@ -9,6 +9,7 @@ import numpy as np
 from exptime.arrays import Booleans, Floats
 
 _NARROWEST = 1e-3
+_NARROW = 0.15
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -61,12 +62,18 @@ class Kernels:
 
 def _images(x: Floats, center: Floats, width: float, is_periodic: bool) -> Floats:
     """One-dimensional kernel with the images that periodicity or reflection brings in."""
-    shifts = (-1.0, 0.0, 1.0) if is_periodic else (-2.0, 0.0, 2.0)
-    sources = [center + shift for shift in shifts]
-    if not is_periodic:
-        sources += [shift - center for shift in shifts]
+    # Images farther off than a whole axis count for wide kernels only.
+    is_wide = width > _NARROW
+    if is_periodic:
+        apart = np.abs(x - center)
+        distances = [apart, 1.0 - apart]
+        distances += [1.0 + apart, 2.0 - apart] if is_wide else []
+    else:
+        apart, mirrored = x - center, x + center
+        distances = [apart, mirrored, mirrored - 2.0]
+        distances += [apart - 2.0, apart + 2.0] if is_wide else []
     norm = 1.0 / (np.sqrt(2.0 * np.pi) * width)
-    return np.asarray(sum(np.exp(-0.5 * ((x - s) / width) ** 2) for s in sources) * norm)
+    return np.asarray(sum(np.exp(-0.5 * (d / width) ** 2) for d in distances) * norm)
 
 
 def uniform(is_periodic: Booleans) -> Kernels:

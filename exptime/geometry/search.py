@@ -87,21 +87,16 @@ def find_geometries(
         When no geometry gives the flux, or none comes within four standard deviations of a
         pulsed fraction.
     """
-    proposals: list[Kernels] = []
-    sizes: list[int] = []
-    points = np.empty((0, len(search.axes)))
+    drawn_from = _Mixture(np.empty((0, len(search.axes))))
     found: list[Candidate | None] = []
     wanted = _ENOUGH * count
     weights = np.empty(0)
-    while len(proposals) < _MOST_ROUNDS:
-        proposal = _next_proposal(search, points, found, proposals, sizes)
-        size = _ROUND if proposals else _FIRST_ROUND
-        drawn = proposal.draw(size, random)
+    while len(drawn_from.proposals) < _MOST_ROUNDS:
+        proposal = _next_proposal(search, found, drawn_from)
+        drawn = proposal.draw(_ROUND if found else _FIRST_ROUND, random)
         found += team.map(partial(evaluate, search), list(drawn), chunk=16)
-        points = np.concatenate([points, drawn])
-        proposals.append(proposal)
-        sizes.append(size)
-        weights = _weights(points, found, proposals, sizes, temper=1.0)
+        drawn_from.add(proposal, drawn)
+        weights = _weights(found, drawn_from.density, temper=1.0)
         reached = effective_number(weights)
         progress(min(int(reached), int(wanted)), int(wanted))
         if reached >= wanted:
@@ -117,33 +112,44 @@ def find_geometries(
     )
 
 
+class _Mixture:
+    """Points drawn so far with the mixture of all proposals, each by its number of points."""
+
+    def __init__(self, no_points: Floats) -> None:
+        self.points = no_points
+        self.proposals: list[tuple[int, Kernels]] = []
+        self._mass = np.empty(0)
+
+    def add(self, proposal: Kernels, drawn: Floats) -> None:
+        """Add a round; densities known before are not computed again."""
+        self.proposals.append((len(drawn), proposal))
+        older = self._mass + len(drawn) * proposal.density(self.points)
+        newer = sum(size * each.density(drawn) for size, each in self.proposals)
+        self._mass = np.concatenate([older, newer])
+        self.points = np.concatenate([self.points, drawn])
+
+    @property
+    def density(self) -> Floats:
+        """Density of the mixture at each point, shape (n,)."""
+        return self._mass / max(len(self.points), 1)
+
+
 def _next_proposal(
-    search: Search,
-    points: Floats,
-    found: Sequence[Candidate | None],
-    proposals: Sequence[Kernels],
-    sizes: Sequence[int],
+    search: Search, found: Sequence[Candidate | None], drawn_from: _Mixture
 ) -> Kernels:
     """Place kernels by the likelihood, softened until enough points carry weight."""
     if not any(candidate is not None for candidate in found):
         return uniform(search.is_periodic)
-    temper = 1.0
+    temper, density = 1.0, drawn_from.density
     while (
         temper > _SOFTEST
-        and effective_number(weights := _weights(points, found, proposals, sizes, temper))
-        < _KERNELS_WANTED
+        and effective_number(weights := _weights(found, density, temper)) < _KERNELS_WANTED
     ):
         temper *= 0.7
-    return around(points, weights, search.is_periodic, _UNIFORM_SHARE)
+    return around(drawn_from.points, weights, search.is_periodic, _UNIFORM_SHARE)
 
 
-def _weights(
-    points: Floats,
-    found: Sequence[Candidate | None],
-    proposals: Sequence[Kernels],
-    sizes: Sequence[int],
-    temper: float,
-) -> Floats:
+def _weights(found: Sequence[Candidate | None], density: Floats, temper: float) -> Floats:
     """Return likelihood**temper over the density that the points were drawn from."""
     likelihood = np.array(
         [-np.inf if candidate is None else candidate.log_likelihood for candidate in found]
@@ -151,9 +157,6 @@ def _weights(
     best = likelihood.max(initial=-np.inf)
     if not np.isfinite(best):
         return np.zeros(len(found))
-    density = sum(
-        size * proposal.density(points) for size, proposal in zip(sizes, proposals, strict=True)
-    ) / sum(sizes)
     with np.errstate(invalid="ignore"):
         relative = np.where(np.isfinite(likelihood), temper * (likelihood - best), -np.inf)
     return np.asarray(np.exp(relative) / density)

@@ -88,3 +88,17 @@ def test_one_point_alone_still_spreads_its_kernel() -> None:
     """A width of zero would be no density."""
     proposal = around(np.array([[0.3, 0.4]]), np.ones(1), np.array([False, False]), 0.2)
     assert np.all(proposal.widths > 0.0)
+
+
+def test_narrow_kernels_leave_out_images_that_do_not_count() -> None:
+    """At the width where far images are first left out, the density makes no step.
+
+    Such an image is exp(-1/(2 x 0.15²)) = 2e-10 of a peak of 7; there are two of them.
+    """
+    points = middles(50, 2)
+    for is_periodic in (np.array([True, True]), np.array([False, False])):
+        below, above = (
+            kernels(0.15 * factor, is_periodic, 0.0).density(points)
+            for factor in (1.0 - 1e-12, 1.0 + 1e-12)
+        )
+        np.testing.assert_allclose(below, above, rtol=1e-9, atol=3.2e-9)
