@@ -167,7 +167,8 @@ def required_exposure(experiment: Experiment, quantity: Quantity, precision: flo
     Returns
     -------
     float
-        s, between 1 and 1e8; infinite when 1e8 s do not suffice.
+        s: zero where 1 s is enough, as the priors alone then meet it; infinite when 1e8 s do not
+        suffice.
     """
     wanted = precision * experiment.value(quantity)
     return earliest(
@@ -190,12 +191,13 @@ def earliest(is_reached: Callable[[float], bool], shortest: float, longest: floa
     Returns
     -------
     float
-        Good to one part in a million; infinite when the condition fails at `longest`.
+        Good to one part in a million; zero when the condition holds at `shortest` already,
+        infinite when it fails at `longest`.
     """
     if not is_reached(longest):
         return math.inf
     if is_reached(shortest):
-        return shortest
+        return 0.0
     low, high = math.log(shortest), math.log(longest)
     while high - low > 1e-6:
         middle = 0.5 * (low + high)
