@@ -20,7 +20,7 @@ if TYPE_CHECKING:
 # lines differ in their dashes as well.
 INK: Final = "#20262b"
 FAINT: Final = "#8b9399"
-COLORS: Final = ("#0b5c8a", "#b4620f", "#7d3c7e", "#4d7a33")
+COLORS: Final = ("#0b5c8a", "#a5580c", "#7d3c7e", "#4d7a33")
 DASHES: Final[tuple[str | tuple[int, tuple[float, ...]], ...]] = (
     "-",
     (0, (6.0, 2.0)),

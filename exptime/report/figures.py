@@ -67,8 +67,8 @@ def precision_picture(forecast: Forecast) -> Picture | None:
     median = "" if forecast.is_geometry_known else ", median"
     caption = (
         f"One sigma over the value, against exposure. Line: from the data{median}{spread}. Dotted: "
-        "with the flat priors on mass and radius as well. Grey lines with their numbers: the goals. Open circles: "
-        "prior-limited, no measurement."
+        "with the flat priors on mass and radius as well. Grey lines with their numbers: the "
+        "goals. Open circles: prior-limited, no measurement."
     )
     names = " and ".join(NAMES[each] for each in quantities)
     last = [

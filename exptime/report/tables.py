@@ -126,7 +126,8 @@ def fixed_quantities(forecast: Forecast) -> tuple[str, ...]:
 
 def key_facts(forecast: Forecast) -> Facts:
     """Return the few numbers that a reader looks for first."""
-    cost = costs(forecast)[0]
+    every = costs(forecast)
+    cost = next((each for each in every if not each.is_met_beforehand), every[0])
     requested = requested_exposure_s(forecast)
     pairs: list[tuple[str, str]] = []
     if forecast.is_geometry_known:
