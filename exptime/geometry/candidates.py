@@ -28,7 +28,7 @@ from exptime.target.records import Target
 
 _ROUGH: Final = Resolution(harmonics=1, rings=8, redshift_terms=8)
 _FINE: Final = Resolution(harmonics=24, rings=8, redshift_terms=8)
-_LARGEST_RATIO = 3.0
+LARGEST_RATIO: Final = 3.0
 _LARGEST_RADIUS = 0.5 * math.pi
 _FLUX_TOLERANCE = 3e-3
 _FLUX_STEPS = 12
@@ -128,31 +128,50 @@ def evaluate(search: Search, point: Floats) -> Candidate | None:
     return Candidate(star=star, spots=spots, fractions=fractions, log_likelihood=likelihood)
 
 
+def columns_at(search: Search, points: Floats) -> dict[str, Floats]:
+    """Return what points in the unit cube say of star and spots, arrays of shape (n,).
+
+    Parameters
+    ----------
+    search : Search
+        What is sought.
+    points : ndarray, shape (n, n_axis)
+        In the unit cube.
+
+    Returns
+    -------
+    dict of ndarray
+        ``mass`` (Msun), ``radius`` (km) and ``cos_inclination``, given or drawn, and the axes of
+        the spots as they are.
+    """
+    target, at = search.target, dict(zip(search.axes, points.T, strict=True))
+
+    def drawn(axis: str, given: float | None, fixed: float, low: float, high: float) -> Floats:
+        if given is not None:
+            return np.full(len(points), given)
+        return low + at[axis] * (high - low) if axis in at else np.full(len(points), fixed)
+
+    mass = target.mass.value if target.mass is not None else None
+    radius = target.radius.value if target.radius is not None else None
+    inclination = target.inclination
+    cosine = max(math.cos(inclination.value), 0.0) if inclination is not None else None
+    return {
+        **at,
+        "mass": drawn("mass", mass, FIXED_MASS_MSUN, *DRAWN_MASS_MSUN),
+        "radius": drawn("radius", radius, FIXED_RADIUS_KM, *DRAWN_RADIUS_KM),
+        "cos_inclination": drawn("cos_inclination", cosine, 0.0, 0.0, 1.0),
+    }
+
+
 def star_at(search: Search, point: Floats) -> Star:
     """Return the star of a point in the unit cube."""
-    target, at = search.target, dict(zip(search.axes, point, strict=True))
-
-    def drawn(axis: str, low: float, high: float) -> float:
-        return low + float(at[axis]) * (high - low)
-
-    if target.mass is not None:
-        mass = target.mass.value
-    else:
-        mass = drawn("mass", *DRAWN_MASS_MSUN) if "mass" in at else FIXED_MASS_MSUN
-    if target.radius is not None:
-        radius = target.radius.value
-    else:
-        radius = drawn("radius", *DRAWN_RADIUS_KM) if "radius" in at else FIXED_RADIUS_KM
-    if target.inclination is not None:
-        cosine = math.cos(target.inclination.value)
-    else:
-        cosine = float(at["cos_inclination"])
+    at = columns_at(search, point[None])
     return Star(
-        mass_msun=mass,
-        radius_km=radius,
-        spin_hz=target.spin_hz,
-        cos_inclination=cosine,
-        figure=target.figure,
+        mass_msun=float(at["mass"][0]),
+        radius_km=float(at["radius"][0]),
+        spin_hz=search.target.spin_hz,
+        cos_inclination=float(at["cos_inclination"][0]),
+        figure=search.target.figure,
     )
 
 
@@ -168,7 +187,7 @@ def _shape_at(search: Search, star: Star, point: Floats) -> tuple[HotSpot, HotSp
     """Return spots whose radii have a geometric mean of 1 rad."""
     at = dict(zip(search.axes, point, strict=True))
     temperature = surface_temperature_kev(search.target, star)
-    root_ratio = _LARGEST_RATIO ** (float(at["ratio"]) - 0.5)
+    root_ratio = LARGEST_RATIO ** (float(at["ratio"]) - 0.5)
 
     def spot(axis: str, longitude: float, radius: float) -> HotSpot:
         return HotSpot(

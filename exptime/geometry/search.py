@@ -1,9 +1,9 @@
 """Search for geometries that reproduce flux and pulse, by draws that learn where to look.
 
-Points are drawn in rounds from the unit cube, first uniformly, then from a mixture of the uniform
-density and kernels about the best points so far. Each candidate weighs as its likelihood over the
-mixture of all rounds' densities, so that the weighted set stands for the prior times the
-likelihood whatever the proposals were.
+Points are drawn in rounds from the unit cube: first where a rough pulse in closed form fits, then
+about the best points so far, always with a share of uniform ones. Each candidate weighs as its
+likelihood over the mixture of all rounds' densities, so that the weighted set stands for the
+prior times the likelihood whatever the proposals were.
 
 References
 ----------
@@ -22,19 +22,26 @@ import numpy as np
 from exptime.arrays import Floats
 from exptime.errors import Fault, UnreachableError
 from exptime.geometry.candidates import Candidate, Search, evaluate
-from exptime.geometry.proposal import Kernels, around, uniform
+from exptime.geometry.proposal import Kernels, around
 from exptime.geometry.resampling import effective_number, thin
+from exptime.geometry.surrogate import Surrogate, surrogate_of
 from exptime.parallel import Workers
 from exptime.progress import Progress, silent
 
-_FIRST_ROUND = 512
+_FIRST_ROUND = 384
 _ROUND = 256
 _MOST_ROUNDS = 24
+_PATIENCE = 5
+"""Rounds after which a measurement far beyond all candidates is given up."""
+
 _ENOUGH = 1.2
 _KERNELS_WANTED = 40.0
 _UNIFORM_SHARE = 0.2
 _SOFTEST = 1e-6
 _FAR_SIGMA = 4.0
+
+
+Proposal = Kernels | Surrogate
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -92,7 +99,7 @@ def find_geometries(
     wanted = _ENOUGH * count
     weights = np.empty(0)
     while len(drawn_from.proposals) < _MOST_ROUNDS:
-        proposal = _next_proposal(search, found, drawn_from)
+        proposal = _next_proposal(search, found, drawn_from, random)
         drawn = proposal.draw(_ROUND if found else _FIRST_ROUND, random)
         found += team.map(partial(evaluate, search), list(drawn), chunk=16)
         drawn_from.add(proposal, drawn)
@@ -101,6 +108,8 @@ def find_geometries(
         progress(min(int(reached), int(wanted)), int(wanted))
         if reached >= wanted:
             break
+        if len(drawn_from.proposals) == _PATIENCE:
+            _refuse_unreachable(search, found)
     _refuse_unreachable(search, found)
     indices, share = thin(weights, count, random)
     chosen = [found[index] for index in indices]
@@ -117,10 +126,10 @@ class _Mixture:
 
     def __init__(self, no_points: Floats) -> None:
         self.points = no_points
-        self.proposals: list[tuple[int, Kernels]] = []
+        self.proposals: list[tuple[int, Proposal]] = []
         self._mass = np.empty(0)
 
-    def add(self, proposal: Kernels, drawn: Floats) -> None:
+    def add(self, proposal: Proposal, drawn: Floats) -> None:
         """Add a round; densities known before are not computed again."""
         self.proposals.append((len(drawn), proposal))
         older = self._mass + len(drawn) * proposal.density(self.points)
@@ -135,11 +144,14 @@ class _Mixture:
 
 
 def _next_proposal(
-    search: Search, found: Sequence[Candidate | None], drawn_from: _Mixture
-) -> Kernels:
+    search: Search,
+    found: Sequence[Candidate | None],
+    drawn_from: _Mixture,
+    random: np.random.Generator,
+) -> Proposal:
     """Place kernels by the likelihood, softened until enough points carry weight."""
     if not any(candidate is not None for candidate in found):
-        return uniform(search.is_periodic)
+        return surrogate_of(search, random, _UNIFORM_SHARE)
     temper, density = 1.0, drawn_from.density
     while (
         temper > _SOFTEST

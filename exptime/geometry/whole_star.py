@@ -29,8 +29,7 @@ def refuse_too_bright(search: Search) -> None:
     wanted = search.target.flux
     if wanted is None:
         return
-    # The largest star that may be drawn; a smaller one radiates less.
-    star = star_at(search, np.ones(len(search.axes)))
+    star = max(_extreme_stars(search), key=lambda each: _most(search, each))
     temperature = surface_temperature_kev(search.target, star)
     most = whole_star_flux(search, star, temperature)
     if most >= wanted.value:
@@ -50,6 +49,19 @@ def refuse_too_bright(search: Search) -> None:
             remedy=" or ".join(remedies) + " would do.",
         )
     )
+
+
+def _extreme_stars(search: Search) -> list[Star]:
+    """Return the largest star that may be drawn, at its smallest and largest mass.
+
+    Mass widens the disc that is seen and cools its light: which wins depends on the band.
+    """
+    lightest = [0.0 if axis == "mass" else 1.0 for axis in search.axes]
+    return [star_at(search, np.array(point)) for point in (lightest, np.ones(len(lightest)))]
+
+
+def _most(search: Search, star: Star) -> float:
+    return whole_star_flux(search, star, surface_temperature_kev(search.target, star))
 
 
 def whole_star_flux(search: Search, star: Star, temperature_kev: float) -> float:
