@@ -49,6 +49,7 @@ class Workers:
         items: Sequence[Item],
         progress: Progress = silent,
         chunk: int = 1,
+        fewest: int = _FEWEST_FOR_A_POOL,
     ) -> list[Result]:
         """Apply a function to every item.
 
@@ -62,6 +63,8 @@ class Workers:
             Told after each result.
         chunk : int
             Items sent to a process at once.
+        fewest : int
+            Fewer items than this are worked off in this process.
 
         Returns
         -------
@@ -69,15 +72,15 @@ class Workers:
             Results in the order of the items.
         """
         results: list[Result] = []
-        for result in self._results(function, items, chunk):
+        for result in self._results(function, items, chunk, fewest):
             results.append(result)
             progress(len(results), len(items))
         return results
 
     def _results(
-        self, function: Callable[[Item], Result], items: Sequence[Item], chunk: int
+        self, function: Callable[[Item], Result], items: Sequence[Item], chunk: int, fewest: int
     ) -> Iterator[Result]:
-        if self._jobs == 1 or len(items) < _FEWEST_FOR_A_POOL:
+        if self._jobs == 1 or len(items) < fewest:
             return map(function, items)
         with _main_module_hidden():
             return self._start().map(function, items, chunksize=chunk)

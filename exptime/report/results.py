@@ -6,8 +6,9 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from exptime.arrays import Floats
+from exptime.information.precision import Quantity as QuantityName
 from exptime.quantities import to_quantity
-from exptime.study.records import Counts, Forecast, Pulse, QuantityName, Spread
+from exptime.study.records import Counts, Forecast, Pulse, Spread
 
 if TYPE_CHECKING:
     from astropy.units import Quantity

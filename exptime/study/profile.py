@@ -12,10 +12,11 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from exptime.arrays import Floats
+from exptime.arrays import Booleans, Floats
 from exptime.constants import SOLAR_MASS_KM
+from exptime.information.model import Bounds, Constraint, Model, Penalty
 from exptime.information.precision import Experiment, Quantity
-from exptime.information.refit import Bounds, Constraint, Fit, Model, Penalty, fit
+from exptime.information.refit import Fit, fit
 
 RISES = (1.0, 3.841)
 _STEP = 0.5
@@ -44,7 +45,7 @@ class Setting:
     model: Model
     truth: Floats
     penalty: Penalty
-    is_free: Floats
+    is_free: Booleans
     bounds: Bounds | None = None
 
     @property
@@ -165,7 +166,7 @@ def value_of(setting: Setting, quantity: Quantity, vector: Floats) -> float:
 
 def constraint_at(setting: Setting, quantity: Quantity, value: float) -> Constraint:
     """Return the vectors at which a quantity has a value; fixed parameters stay."""
-    names, free = setting.model.names, setting.is_free.astype(bool)
+    names, free = setting.model.names, setting.is_free
     identity = np.eye(len(names))
     origin = np.where(free, 0.0, setting.truth)
     mass, radius = names.index("mass"), names.index("radius")
@@ -183,7 +184,7 @@ def constraint_at(setting: Setting, quantity: Quantity, value: float) -> Constra
 
 def free_constraint(setting: Setting) -> Constraint:
     """Return the vectors whose fixed parameters are those of the truth."""
-    free = setting.is_free.astype(bool)
+    free = setting.is_free
     origin = np.where(free, 0.0, setting.truth)
     return Constraint(origin=origin, directions=np.eye(len(free))[:, free])
 

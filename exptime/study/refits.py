@@ -9,8 +9,9 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from exptime.arrays import Floats
+from exptime.information.model import Bounds
 from exptime.information.precision import QUANTITIES
-from exptime.information.refit import Bounds, fit
+from exptime.information.refit import fit
 from exptime.study.profile import Setting, free_constraint, value_of
 from exptime.study.verify_records import Refit, Scatter, Simulations
 

@@ -1,0 +1,88 @@
+"""The verdict on a Fisher bound, in one word and one sentence."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+
+from exptime.study.profile import Profile
+from exptime.study.verify_records import Hump, Scatter, Simulations, Verdict
+
+_TOLERATED = 0.15
+_MANY_ELSEWHERE = 0.05
+_SIGMAS = 3.0
+
+
+def verdict_of(
+    profiles: Sequence[Profile],
+    humps: Sequence[Hump],
+    simulations: Simulations | None,
+    is_prior_limited: bool,
+) -> tuple[Verdict, str]:
+    """Judge the bound on the radius.
+
+    Parameters
+    ----------
+    profiles : sequence of Profile
+        With Gaussian-counted priors; one is of the radius.
+    humps : sequence of Hump
+        Other maxima that the data allow.
+    simulations : Simulations or None
+        Refits, if there were any.
+    is_prior_limited : bool
+        Whether the radius is prior-limited.
+
+    Returns
+    -------
+    tuple of str
+        The word, and the reason in a sentence.
+
+    Notes
+    -----
+    A bound holds when profile and scatter agree with it to 15 per cent, or, for the scatter and
+    coverage of few refits, to three of their own standard errors.
+    """
+    profile = next(profile for profile in profiles if profile.quantity == "radius")
+    if is_prior_limited:
+        return "prior-limited", (
+            "The radius is prior-limited: what was known beforehand says more than the data, and "
+            "the bound is no measurement."
+        )
+    away = [hump for hump in humps if abs(hump.radius_km - profile.truth) > profile.bound]
+    if away:
+        hump = away[0]
+        return "multimodal", (
+            f"Another solution fits the expected data as well (deviance {hump.rise:.2g} above the "
+            f"first) at {hump.radius_km:.2f} km, inclination "
+            f"{math.degrees(hump.inclination):.0f} deg: the bound sees only one of them."
+        )
+    if simulations is not None and simulations.converged:
+        share = simulations.elsewhere / simulations.converged
+        if share > _MANY_ELSEWHERE:
+            return "multimodal", (
+                f"{100 * share:.0f} per cent of {simulations.converged} refits ended at another "
+                "solution: the bound sees only one of them."
+            )
+    scatter = _of_radius(simulations)
+    ratios = [("the profile likelihood", profile.ratio, _TOLERATED)]
+    if scatter is not None and simulations is not None:
+        allowed = max(_TOLERATED, _SIGMAS / math.sqrt(2.0 * simulations.converged))
+        ratios.append((f"{simulations.converged} refits", scatter.ratio, allowed))
+    for witness, ratio, allowed in ratios:
+        if not math.isfinite(ratio) or ratio > 1.0 + allowed:
+            size = f"by a factor {ratio:.2f}" if math.isfinite(ratio) else "without limit"
+            return "optimistic", f"The bound is optimistic {size}, by {witness}."
+        if ratio < 1.0 - allowed:
+            return "pessimistic", (
+                f"The bound is pessimistic: {witness} gives {ratio:.2f} of it, because limits or "
+                "a fold of the ridge cut the range of fits."
+            )
+    return "holds", "The bound holds: " + ", ".join(
+        f"{witness} gives {ratio:.2f} of it" for witness, ratio, _ in ratios
+    ) + "."
+
+
+def _of_radius(simulations: Simulations | None) -> Scatter | None:
+    if simulations is None:
+        return None
+    return next((item for item in simulations.scatter if item.quantity == "radius"), None)

@@ -1,0 +1,251 @@
+"""Check a Fisher bound: profiles, other humps and refits for the geometries that decide."""
+
+from __future__ import annotations
+
+import hashlib
+import math
+import pickle
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass, field, replace
+from functools import partial
+
+import numpy as np
+
+from exptime.arrays import Floats
+from exptime.geometry.resampling import weighted_quantiles
+from exptime.information.model import Bounds
+from exptime.information.precision import QUANTITIES, Experiment, Quantity
+from exptime.instrument.records import Instrument
+from exptime.interstellar.absorption import load_absorption
+from exptime.observation.instrument_response import instrument_response
+from exptime.parallel import Workers, workers
+from exptime.progress import Progress, silent
+from exptime.study.case import Case, Question, answer
+from exptime.study.geometries import Draws, GeometrySet, InstrumentReader, geometries_of
+from exptime.study.humps import climb, distinct_humps, hump_starts
+from exptime.study.profile import Profile, Setting, profile_of, ridge_direction
+from exptime.study.refits import Observer, refit_one, summarise
+from exptime.study.setting import hard_limits, setting_of
+from exptime.study.verdict import verdict_of
+from exptime.study.verify_records import CheckedGeometry, Refit, Simulations, Verification
+from exptime.study.versions import versions
+from exptime.target.records import Target
+
+Ledger = dict[str, list[float]]
+"""Refits done so far: label and number to [has converged, vector...]."""
+
+Keep = Callable[[Ledger], None]
+
+_PROFILED: tuple[Quantity, ...] = ("radius", "mass", "compactness")
+_POINTS = {"16 per cent point": 0.16, "median": 0.5, "84 per cent point": 0.84}
+_BLOCK = 16
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Plan:
+    """What a verification is to do.
+
+    Parameters
+    ----------
+    exposure_s : float
+        Exposure, s.
+    simulations : int
+        Simulated observations of each geometry; none is allowed.
+    draws : Draws
+        How geometries are drawn; its seed serves the simulations too.
+    """
+
+    exposure_s: float
+    simulations: int = 0
+    draws: Draws = field(default_factory=Draws)
+
+
+def make_verification(
+    target: Target,
+    instrument: Instrument,
+    plan: Plan,
+    *,
+    jobs: int = 1,
+    read_instrument: InstrumentReader,
+    ledger: Ledger | None = None,
+    keep: Keep | None = None,
+    progress: Progress = silent,
+) -> Verification:
+    """Verify the forecast of a target.
+
+    Parameters
+    ----------
+    target : Target
+        The target.
+    instrument : Instrument
+        The instrument.
+    plan : Plan
+        What to do.
+    jobs : int
+        Number of processes; changes no number.
+    read_instrument : callable
+        Reads the instruments that the target's measurements name.
+    ledger : dict, optional
+        Refits done before, by the same plan; added to.
+    keep : callable, optional
+        Called with the ledger after every block of refits.
+    progress : Progress
+        Told how far the work has come.
+
+    Raises
+    ------
+    OutOfRangeError, UnreachableError
+        As `exptime.study.forecast.make_forecast`.
+    """
+    absorption = load_absorption(target.abundances)
+    question = Question(
+        target=target,
+        instrument=instrument,
+        response=instrument_response(instrument, absorption),
+        exposures_s=np.array([plan.exposure_s]),
+        goals=(),
+    )
+    done: Ledger = {} if ledger is None else ledger
+    with workers(jobs) as team:
+        geometries = geometries_of(target, plan.draws, absorption, read_instrument, team)
+        cases = team.map(partial(answer, question), geometries.geometries)
+        chosen = _chosen(geometries, cases)
+        checked = [
+            _check(question, plan, label, geometries, index, cases[index], team, done, keep,
+                   partial(_shifted, progress, number, len(chosen)))
+            for number, (label, index) in enumerate(chosen)
+        ]  # fmt: skip
+    return Verification(
+        target=target.name,
+        file=target.file,
+        instrument=instrument.name,
+        exposure_s=plan.exposure_s,
+        seed=plan.draws.seed,
+        geometries=tuple(checked),
+        versions=versions(),
+        notes=(*target.assumptions, *instrument.assumptions, *target.warnings),
+    )
+
+
+def fingerprint(target: Target, instrument: Instrument, plan: Plan) -> str:
+    """Return a text that differs whenever refits kept before must not be used again."""
+    content = pickle.dumps((target.entries, instrument, plan.exposure_s, plan.draws))
+    return hashlib.sha256(content).hexdigest()[:32]
+
+
+def _shifted(progress: Progress, number: int, count: int, done: int, total: int) -> None:
+    progress(number * total + done, count * total)
+
+
+def _counted(progress: Progress, before: int, total: int, done: int, _: int) -> None:
+    progress(before + done, total)
+
+
+def _chosen(geometries: GeometrySet, cases: Sequence[Case]) -> list[tuple[str, int]]:
+    """Return labels and indices of the geometries to verify."""
+    if geometries.is_known:
+        return [("the geometry given", 0)]
+    sigma = np.array([case.data_sigma[0, 1] for case in cases])
+    points = weighted_quantiles(sigma, geometries.weights, np.array(list(_POINTS.values())))
+    finite = np.where(np.isfinite(sigma), sigma, np.inf)
+    found: dict[int, str] = {}
+    for label, point in zip(_POINTS, points, strict=True):
+        with np.errstate(invalid="ignore"):
+            distance = np.abs(finite - point)
+        index = int(np.nanargmin(np.where(np.isnan(distance), np.inf, distance)))
+        found.setdefault(index, label)
+    return [(label, index) for index, label in found.items()]
+
+
+def _check(
+    question: Question,
+    plan: Plan,
+    label: str,
+    geometries: GeometrySet,
+    index: int,
+    case: Case,
+    team: Workers,
+    ledger: Ledger,
+    keep: Keep | None,
+    progress: Progress,
+) -> CheckedGeometry:
+    geometry = geometries.geometries[index]
+    setting, experiment, covariance = setting_of(question, geometry, plan.exposure_s)
+    limits = hard_limits(setting.model.names)
+    tasks = [
+        (replace(setting, bounds=bounds), quantity, experiment, covariance)
+        for bounds in (None, limits)
+        for quantity in _PROFILED
+    ]
+    total = len(tasks) + plan.simulations
+    profiles = team.map(_profile, tasks, lambda done, _: progress(done, total), fewest=2)
+    starts = hump_starts(setting, geometries, index)
+    ends = team.map(partial(climb, setting, limits), starts, fewest=2)
+    humps = distinct_humps(setting, ends)
+    simulations = None
+    if plan.simulations:
+        simulations = _simulate(
+            plan, label, setting, experiment, covariance, limits, team, ledger, keep,
+            lambda done, _: progress(len(tasks) + done, total),
+        )  # fmt: skip
+    is_prior_limited = bool(case.is_prior_limited[0, 1])
+    word, reason = verdict_of(profiles[:3], humps, simulations, is_prior_limited)
+    return CheckedGeometry(
+        label=label,
+        star=geometry[0],
+        spots=geometry[1],
+        profiles=tuple(profiles[:3]),
+        bounded_profiles=tuple(profiles[3:]),
+        humps=tuple(humps),
+        simulations=simulations,
+        is_prior_limited=is_prior_limited,
+        verdict=word,
+        reason=reason,
+    )
+
+
+_Task = tuple[Setting, Quantity, Experiment, Floats]
+
+
+def _profile(task: _Task) -> Profile:
+    setting, quantity, experiment, covariance = task
+    row = experiment.directions()[QUANTITIES.index(quantity)]
+    bound = math.sqrt(max(float(row @ covariance @ row), 0.0))
+    return profile_of(setting, quantity, bound, ridge_direction(experiment, covariance, quantity))
+
+
+def _simulate(
+    plan: Plan,
+    label: str,
+    setting: Setting,
+    experiment: Experiment,
+    covariance: Floats,
+    limits: Bounds,
+    team: Workers,
+    ledger: Ledger,
+    keep: Keep | None,
+    progress: Progress,
+) -> Simulations:
+    free = experiment.is_free
+    full = np.zeros((len(free), len(free)))
+    full[np.ix_(free, free)] = covariance
+    seeds = np.random.SeedSequence((plan.draws.seed, 7)).spawn(plan.simulations)
+    observer = Observer(setting=setting, covariance=full, seeds=tuple(seeds), bounds=limits)
+    missing = [n for n in range(plan.simulations) if f"{label}:{n}" not in ledger]
+    finished = plan.simulations - len(missing)
+    for first in range(0, len(missing), _BLOCK):
+        block = missing[first : first + _BLOCK]
+        told = partial(_counted, progress, finished + first, plan.simulations)
+        results = team.map(partial(refit_one, observer), block, told)
+        for number, (has_converged, vector) in zip(block, results, strict=True):
+            ledger[f"{label}:{number}"] = [float(has_converged), *vector.tolist()]
+        if keep is not None:
+            keep(ledger)
+    refits: list[Refit] = []
+    for number in range(plan.simulations):
+        flag, *values = ledger[f"{label}:{number}"]
+        refits.append((bool(flag), np.array(values)))
+    bounds = np.sqrt(
+        np.maximum(np.diagonal(experiment.directions() @ covariance @ experiment.directions().T), 0)
+    )
+    return summarise(observer, refits, bounds)
