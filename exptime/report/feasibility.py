@@ -38,8 +38,9 @@ def feasibility(forecast: Forecast) -> str:
     sentences = [_rates(forecast), _basis(forecast)]
     goal = f"a precision of {percent(cost.goal.precision)} per cent (one sigma) in "
     goal += NAMES[cost.goal.quantity]
-    if cost.is_met_beforehand:
-        sentences.append(f"{_capital(goal)} is known beforehand and is not the aim here.")
+    if cost.p50 <= 0.0:
+        whom = "" if cost.is_met_beforehand else f" for {_half(forecast)}"
+        sentences.append(f"{_capital(goal)} is known beforehand{whom} and is not the aim here.")
     elif math.isfinite(cost.p50) and is_prior_limited(forecast, cost):
         sentences.append(
             f"{_capital(goal)} would be prior-limited: it would rest more on what is known "

@@ -163,10 +163,7 @@ def _draw_share(forecast: Forecast) -> Figure:
 def _time_range(forecast: Forecast, every: tuple[Cost, ...]) -> tuple[float, float]:
     """Return the exposures between which something happens."""
     finite = [
-        time
-        for cost in every
-        for time in (cost.p16, cost.p84)
-        if math.isfinite(time) and not cost.is_met_beforehand and time <= cost.longest_s
+        time for cost in every for time in (cost.p16, cost.p84) if 0.0 < time <= cost.longest_s
     ]
     start = min([float(forecast.exposures_s[0]), *(0.7 * time for time in finite)])
     end = max([float(forecast.exposures_s[-1]), *(1.4 * time for time in finite)])

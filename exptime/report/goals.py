@@ -14,8 +14,6 @@ from exptime.study.records import Forecast, Goal, GoalResult
 
 DEFAULT_GOAL: Final = Goal(quantity="radius", precision=0.05)
 LONGEST_EXPOSURE_S: Final = 1e8
-_SHORTEST_EXPOSURE_S: Final = 1.0
-_HAIR: Final = 1.001
 _QUANTILES: Final = np.array([0.16, 0.50, 0.84])
 
 
@@ -28,13 +26,14 @@ class Cost:
     goal : Goal
         The wanted precision.
     required_s : ndarray, shape (n_geometries,)
-        Exposure for every geometry, s; infinite where not reached.
+        Exposure for every geometry, s; zero where what is known already does it, infinite where
+        not reached.
     weights : ndarray, shape (n_geometries,)
         Shares of the geometries; they sum to one.
     p16, p50, p84 : float
         Weighted quantiles, s.
-    shortest_s, longest_s : float
-        Range in which required exposures were looked for, s.
+    longest_s : float
+        Exposure up to which required ones were looked for, s.
     is_asked : bool
         False where no goal was asked for and one stands in its place.
     """
@@ -45,7 +44,6 @@ class Cost:
     p16: float
     p50: float
     p84: float
-    shortest_s: float
     longest_s: float
     is_asked: bool = True
 
@@ -66,9 +64,7 @@ class Cost:
     @property
     def share_beforehand(self) -> float:
         """Share of the geometries for which what is known already meets the goal."""
-        if not self.is_asked:
-            return 0.0
-        return float(self.weights[self.required_s <= self.shortest_s * _HAIR].sum())
+        return float(self.weights[self.required_s <= 0.0].sum())
 
 
 def costs(forecast: Forecast) -> tuple[Cost, ...]:
@@ -146,7 +142,6 @@ def _asked(result: GoalResult, weights: Floats, margin: float) -> Cost:
         p16=float(spread.p16) * factor,
         p50=float(spread.p50) * factor,
         p84=float(spread.p84) * factor,
-        shortest_s=_SHORTEST_EXPOSURE_S * factor,
         longest_s=LONGEST_EXPOSURE_S,
     )
 
@@ -172,7 +167,6 @@ def _default(forecast: Forecast, weights: Floats) -> Cost:
         p16=p16,
         p50=p50,
         p84=p84,
-        shortest_s=float(times[0]) * factor,
         longest_s=float(times[-1]),
         is_asked=False,
     )

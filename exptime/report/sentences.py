@@ -69,7 +69,7 @@ def _answer(forecast: Forecast, cost: Cost) -> str:
     margin = margin_words(forecast)
     if margin and cost.is_ever_reached:
         words += f" ({margin})"
-    if math.isfinite(cost.p50) and is_prior_limited(forecast, cost):
+    if 0.0 < cost.p50 < math.inf and is_prior_limited(forecast, cost):
         words = (
             "prior-limited, owed to what was known beforehand more than to the observation; "
             f"reached by {words}"
@@ -88,10 +88,14 @@ def _drawn(forecast: Forecast, cost: Cost) -> str:
     then = f"{at} {duration(requested)}, {by_then} {reach} it"
     if math.isinf(cost.p50):
         return f"half of the geometries do not reach it within {limit}; {then}"
-    half = f"half of the geometries by {duration(cost.p50, 2)}"
+    half = f"half of the geometries {_by(cost.p50)}"
     if math.isinf(cost.p84):
         return f"{half}, but 84 per cent not within {limit}; {then}"
-    return f"{half}, 84 per cent by {duration(cost.p84, 2)}; {then}"
+    return f"{half}, 84 per cent {_by(cost.p84)}; {then}"
+
+
+def _by(seconds: float) -> str:
+    return f"by {duration(seconds, 2)}" if seconds > 0.0 else "beforehand"
 
 
 def _known(forecast: Forecast, cost: Cost) -> str:

@@ -249,7 +249,7 @@ def _goal(cost: Cost) -> str:
 
 
 def _time(cost: Cost, seconds: float, digits: int = 2) -> str:
-    if cost.is_met_beforehand:
+    if seconds <= 0.0:
         return "none"
     if math.isinf(seconds):
         return f"> {duration(cost.longest_s)}"

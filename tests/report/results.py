@@ -8,6 +8,7 @@ from dataclasses import replace
 import numpy as np
 
 from exptime.arrays import Floats
+from exptime.information.precision import Quantity as QuantityName
 from exptime.instrument.records import (
     BackgroundKnowledge,
     EffectiveArea,
@@ -25,7 +26,6 @@ from exptime.study.records import (
     Numerics,
     Pulse,
     QuantityCurve,
-    QuantityName,
     ReachedFraction,
     Spread,
 )
@@ -246,10 +246,17 @@ def prior_limited() -> Forecast:
         target=replace(base.target, mass=Measured(value=1.5, uncertainty=0.06)),
         mass=replace(curve(MASS_MSUN, (0.03, 0.038, 0.039), 0.06), is_prior_limited=(True,) * 5),
         goals=(
-            goal_result("mass", 0.1, np.ones(50), (1.0, 1.0, 1.0)),
+            goal_result("mass", 0.1, np.zeros(50), (0.0, 0.0, 0.0)),
             goal_result("mass", 0.038, np.full(50, 2e5), (2e5, 2e5, 2e5)),
         ),
     )
+
+
+def partly_beforehand() -> Forecast:
+    """Return a forecast in which six in ten geometries meet the goal by what is known."""
+    base = normal()
+    need = np.where(np.arange(50) < 30, 0.0, 4e5)
+    return replace(base, goals=(goal_result("radius", 0.2, need, (0.0, 0.0, 4e5)),))
 
 
 def partly_reached() -> Forecast:
@@ -320,6 +327,7 @@ STATES = {
     "unconstrained": unconstrained,
     "prior-limited": prior_limited,
     "partly-reached": partly_reached,
+    "partly-beforehand": partly_beforehand,
     "hidden-spots": hidden_spots,
     "evil-names": evil_names,
     "one-exposure": one_exposure,

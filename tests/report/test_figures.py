@@ -35,7 +35,7 @@ def drawn(name: str, forecast: Forecast) -> Picture:
     return picture
 
 
-@pytest.mark.parametrize("state", ["margin", "no-goal", "partly-reached"])
+@pytest.mark.parametrize("state", ["margin", "no-goal", "partly-reached", "partly-beforehand"])
 def test_figures_are_well_formed(state: str) -> None:
     """Each is one svg element with words for those who cannot see it, and a caption."""
     forecast = STATES[state]()

@@ -52,6 +52,11 @@ from tests.report.results import EXPOSURES_S, STATES
             "longest requested 1 Ms, 32 per cent reach it.",
         ),
         (
+            "partly-beforehand",
+            "20 per cent in radius: half of the geometries beforehand, 84 per cent by 400 ks; at "
+            "the longest requested 1 Ms, all reach it.",
+        ),
+        (
             "prior-limited",
             "10 per cent in mass: known that well beforehand; no observation is needed for it.",
         ),
@@ -158,6 +163,7 @@ def test_the_paragraph_holds_what_a_panel_asks_for() -> None:
         ("unconstrained", "is not reached within 100 Ms for half of the geometries"),
         ("partly-reached", "and is not claimed"),
         ("prior-limited", "is known beforehand and is not the aim here"),
+        ("partly-beforehand", "is known beforehand for half of the geometries and is not the aim"),
         ("known", "takes 700 ks of good exposure. In 1 Ms we expect"),
     ],
 )
