@@ -2,11 +2,11 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import numpy as np
 
-from exptime.arrays import Booleans, Floats
+from exptime.arrays import Booleans, Floats, Integers
 
 _NARROWEST = 1e-3
 _NARROW = 0.15
@@ -28,6 +28,9 @@ class Kernels:
         Axes that close on themselves; the others reflect at their ends.
     uniform_share : float
         Share of the uniform density.
+    sources : ndarray of int, shape (n_center,)
+        Which of the points that the kernels were placed among each centre is; empty where
+        they stand among none.
     """
 
     centers: Floats
@@ -35,6 +38,7 @@ class Kernels:
     widths: Floats
     is_periodic: Booleans
     uniform_share: float
+    sources: Integers = field(default_factory=lambda: np.empty(0, int))
 
     def draw(self, count: int, random: np.random.Generator) -> Floats:
         """Draw points, shape (count, n_dim)."""
@@ -52,12 +56,30 @@ class Kernels:
         """Return the density at points of shape (n, n_dim), shape (n,)."""
         if len(self.centers) == 0:
             return np.ones(len(points))
+        kernel = self._kernels(points) @ self.weights
+        return np.asarray(self.uniform_share + (1.0 - self.uniform_share) * kernel)
+
+    def density_at_sources(self, points: Floats) -> Floats:
+        """Return the density at the points that the kernels were placed among, shape (n,).
+
+        A centre's own kernel is left out at the centre itself: it is there because the point is,
+        and would make every good point weigh too little.
+        """
+        density = self.density(points)
+        if len(self.sources) > 1:
+            each = self._kernels(self.centers)
+            np.fill_diagonal(each, 0.0)
+            kernel = each @ self.weights / (1.0 - self.weights)
+            density[self.sources] = self.uniform_share + (1.0 - self.uniform_share) * kernel
+        return density
+
+    def _kernels(self, points: Floats) -> Floats:
+        """Return the density of every kernel at every point, shape (n, n_center)."""
         total = np.ones((len(points), len(self.centers)))
         for axis, width in enumerate(self.widths):
             x, center = points[:, axis, None], self.centers[None, :, axis]
             total *= _images(x, center, float(width), bool(self.is_periodic[axis]))
-        kernel = total @ self.weights
-        return np.asarray(self.uniform_share + (1.0 - self.uniform_share) * kernel)
+        return total
 
 
 def _images(x: Floats, center: Floats, width: float, is_periodic: bool) -> Floats:
@@ -125,4 +147,5 @@ def around(
         widths=widths,
         is_periodic=is_periodic,
         uniform_share=uniform_share,
+        sources=order,
     )

@@ -132,7 +132,11 @@ class _Mixture:
     def add(self, proposal: Proposal, drawn: Floats) -> None:
         """Add a round; densities known before are not computed again."""
         self.proposals.append((len(drawn), proposal))
-        older = self._mass + len(drawn) * proposal.density(self.points)
+        if isinstance(proposal, Kernels):
+            density = proposal.density_at_sources(self.points)
+        else:
+            density = proposal.density(self.points)
+        older = self._mass + len(drawn) * density
         newer = sum(size * each.density(drawn) for size, each in self.proposals)
         self._mass = np.concatenate([older, newer])
         self.points = np.concatenate([self.points, drawn])

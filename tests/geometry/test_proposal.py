@@ -102,3 +102,22 @@ def test_narrow_kernels_leave_out_images_that_do_not_count() -> None:
             for factor in (1.0 - 1e-12, 1.0 + 1e-12)
         )
         np.testing.assert_allclose(below, above, rtol=1e-9, atol=3.2e-9)
+
+
+def test_a_centre_does_not_vouch_for_itself() -> None:
+    """At a point that a kernel stands on, the density is that of the other kernels."""
+    points = np.random.default_rng(5).random((12, 3))
+    weights = np.arange(12.0)
+    is_periodic = np.array([True, False, False])
+    proposal = around(points, weights, is_periodic, 0.2)
+    found = proposal.density_at_sources(points)
+    for index in range(12):
+        others = proposal.sources != index
+        expected = Kernels(
+            centers=proposal.centers[others],
+            weights=proposal.weights[others] / proposal.weights[others].sum(),
+            widths=proposal.widths,
+            is_periodic=is_periodic,
+            uniform_share=0.2,
+        ).density(points[index : index + 1])
+        assert found[index] == pytest.approx(expected[0], rel=1e-12)
