@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-import io
-from collections.abc import Iterable
 from typing import TYPE_CHECKING
 
 from exptime.report.background import limits, method
@@ -11,7 +9,6 @@ from exptime.report.digits import duration, significant
 from exptime.report.feasibility import feasibility
 from exptime.report.sentences import CAUTION, answers, notes_on_goals
 from exptime.report.tables import (
-    Facts,
     Table,
     fixed_quantities,
     geometry_facts,
@@ -21,6 +18,7 @@ from exptime.report.tables import (
     reading,
     run_facts,
 )
+from exptime.report.typesetting import fact_list, grid, heading, listed, paragraphs, render
 from exptime.report.words import printable
 from exptime.study.records import Counts, Forecast, Pulse
 
@@ -44,29 +42,27 @@ def forecast_text(forecast: Forecast, width: int = 80) -> str:
     target = printable(forecast.target.name)
     names = " and ".join(printable(each.name) for each in forecast.instruments)
     parts: list[RenderableType] = [
-        *_paragraphs(answers(forecast)),
-        *_paragraphs([f"Target: {target}. Instrument: {names}."]),
-        *_list("Warnings", forecast.warnings),
-        *_table(goals_table(forecast)),
+        *paragraphs(answers(forecast)),
+        *paragraphs([f"Target: {target}. Instrument: {names}."]),
+        *listed("Warnings", forecast.warnings),
+        *grid(goals_table(forecast)),
     ]
     for table in precision_tables(forecast):
-        parts += _table(table)
-    parts += _paragraphs(
-        [*fixed_quantities(forecast), *notes_on_goals(forecast), reading(forecast)]
-    )
+        parts += grid(table)
+    parts += paragraphs([*fixed_quantities(forecast), *notes_on_goals(forecast), reading(forecast)])
     parts += [
-        *_facts("Geometry", geometry_facts(forecast)),
-        *_facts("Counts", rate_facts(forecast)),
-        *_list("Assumed", forecast.assumptions),
-        *_list("How it was computed", method(forecast)),
-        *_list("What could be wrong", limits(forecast)),
-        *_heading("For the feasibility section"),
-        *_paragraphs([feasibility(forecast)]),
-        *_facts("This run", run_facts(forecast)),
-        *_heading("Whose word counts"),
-        *_paragraphs([CAUTION]),
+        *fact_list("Geometry", geometry_facts(forecast)),
+        *fact_list("Counts", rate_facts(forecast)),
+        *listed("Assumed", forecast.assumptions),
+        *listed("How it was computed", method(forecast)),
+        *listed("What could be wrong", limits(forecast)),
+        *heading("For the feasibility section"),
+        *paragraphs([feasibility(forecast)]),
+        *fact_list("This run", run_facts(forecast)),
+        *heading("Whose word counts"),
+        *paragraphs([CAUTION]),
     ]
-    return _render(parts, width)
+    return render(parts, width)
 
 
 def pulse_text(pulse: Pulse, width: int = 80) -> str:
@@ -81,9 +77,9 @@ def pulse_text(pulse: Pulse, width: int = 80) -> str:
     """
     title = f"Photon flux of {printable(pulse.target)} at the observer, without the column, in "
     title += "photons cm⁻² s⁻¹ keV⁻¹, averaged over each phase bin"
-    parts = _paragraphs([title])
+    parts = paragraphs([title])
     for columns in _blocks(len(pulse.energies_kev), width):
-        parts += _table(
+        parts += grid(
             Table(
                 caption="",
                 header=("phase", *(f"{pulse.energies_kev[each]:.4g} keV" for each in columns)),
@@ -93,7 +89,7 @@ def pulse_text(pulse: Pulse, width: int = 80) -> str:
                 ),
             )
         )
-    return _render([*parts, *_list("Notes", pulse.notes)], width)
+    return render([*parts, *listed("Notes", pulse.notes)], width)
 
 
 def counts_text(counts: Counts, width: int = 80) -> str:
@@ -135,82 +131,11 @@ def counts_text(counts: Counts, width: int = 80) -> str:
             )
         ),
     )
-    parts = [*_paragraphs([title]), *_table(by_phase), *_table(by_channel)]
-    return _render([*parts, *_list("Notes", counts.notes)], width)
+    parts = [*paragraphs([title]), *grid(by_phase), *grid(by_channel)]
+    return render([*parts, *listed("Notes", counts.notes)], width)
 
 
 def _blocks(count: int, width: int) -> list[range]:
     """Return which columns stand side by side."""
     size = max(1, (width - _FIRST_COLUMN_WIDTH) // (_COLUMN_WIDTH + 2))
     return [range(start, min(start + size, count)) for start in range(0, count, size)]
-
-
-def _heading(title: str) -> list[RenderableType]:
-    from rich.text import Text
-
-    return [Text(title), Text("─" * len(title))]
-
-
-def _paragraphs(sentences: Iterable[str]) -> list[RenderableType]:
-    from rich.text import Text
-
-    return [part for sentence in sentences for part in (Text(printable(sentence)), Text(""))]
-
-
-def _list(title: str, sentences: Iterable[str]) -> list[RenderableType]:
-    from rich.table import Table as Grid
-    from rich.text import Text
-
-    grid = Grid.grid(padding=(0, 1, 0, 0))
-    grid.add_column()
-    grid.add_column(overflow="fold")
-    for sentence in sentences:
-        grid.add_row(Text("-"), Text(printable(sentence)))
-    return [*_heading(title), grid, Text("")] if grid.row_count else []
-
-
-def _facts(title: str, facts: Facts) -> list[RenderableType]:
-    from rich.table import Table as Grid
-    from rich.text import Text
-
-    grid = Grid.grid(padding=(0, 2, 0, 0))
-    grid.add_column(overflow="fold", max_width=28)
-    grid.add_column(overflow="fold")
-    for label, value in facts:
-        grid.add_row(Text(printable(label)), Text(printable(value)))
-    return [*_heading(title), grid, Text("")]
-
-
-def _table(table: Table) -> list[RenderableType]:
-    from rich import box
-    from rich.table import Table as Grid
-    from rich.text import Text
-
-    grid = Grid(box=box.SIMPLE_HEAD, show_edge=False, pad_edge=False, padding=(0, 1))
-    for index, title in enumerate(table.header):
-        is_word = index == 0 or title == "remark"
-        grid.add_column(Text(title), justify="left" if is_word else "right", overflow="fold")
-    for row in table.rows:
-        grid.add_row(*(Text(printable(cell)) for cell in row))
-    caption = [Text(table.caption), Text("")] if table.caption else []
-    return [*caption, grid, Text("")]
-
-
-def _render(parts: Iterable[RenderableType], width: int) -> str:
-    from rich.console import Console
-
-    stream = io.StringIO()
-    console = Console(
-        file=stream,
-        width=width,
-        force_terminal=False,
-        color_system=None,
-        highlight=False,
-        markup=False,
-        emoji=False,
-        legacy_windows=False,
-    )
-    for part in parts:
-        console.print(part)
-    lines = [line.rstrip() for line in stream.getvalue().splitlines()]
-    return "\n".join(lines).rstrip() + "\n"
