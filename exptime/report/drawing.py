@@ -121,8 +121,8 @@ def picture(name: str, draw: Callable[[], Figure], *, caption: str, alternative:
     )
 
 
-def time_axis(axes: Axes, shortest_s: float, longest_s: float) -> None:
-    """Make the horizontal axis one of exposure, in natural units."""
+def time_axis(axes: Axes, shortest_s: float, longest_s: float, only: float | None = None) -> None:
+    """Make the horizontal axis one of exposure, in natural units; with one tick where asked."""
     from matplotlib.ticker import FixedLocator, FuncFormatter, NullFormatter
 
     from exptime.report.digits import duration
@@ -130,7 +130,8 @@ def time_axis(axes: Axes, shortest_s: float, longest_s: float) -> None:
     axes.set_xscale("log")
     axes.set_xlim(shortest_s, longest_s)
     leading = ((1, 3), (1,)) if longest_s > 8.0 * shortest_s else ((1, 2, 5),)
-    axes.xaxis.set_major_locator(FixedLocator(_steps(shortest_s, longest_s, leading, most=6)))
+    ticks = _steps(shortest_s, longest_s, leading, most=6) if only is None else [only]
+    axes.xaxis.set_major_locator(FixedLocator(ticks))
     axes.xaxis.set_major_formatter(FuncFormatter(lambda time, _: duration(time)))
     axes.xaxis.set_minor_formatter(NullFormatter())
     axes.set_xlabel("good on-source time")

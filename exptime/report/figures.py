@@ -1,4 +1,4 @@
-"""Figures against exposure: the share of geometries, precision, ellipses of mass and radius."""
+"""Figures against exposure: the share of geometries that reach each goal, and precision."""
 
 from __future__ import annotations
 
@@ -33,9 +33,6 @@ if TYPE_CHECKING:
     from matplotlib.axes import Axes
     from matplotlib.figure import Figure
 
-_JOINT_68 = math.sqrt(-2.0 * math.log(1.0 - 0.6827))
-"""Half axes, in standard deviations, of the ellipse that holds 68.27 per cent of two Gaussians."""
-
 
 def share_picture(forecast: Forecast) -> Picture | None:
     """Return the share of the geometries that reach each goal; None for known geometry."""
@@ -46,7 +43,8 @@ def share_picture(forecast: Forecast) -> Picture | None:
         "Share of the geometries that reach each goal, against exposure"
         + (f" ({margin})" if margin else "")
         + f". Thin lines: half, 84 per cent, and {duration(requested_exposure_s(forecast))}, the "
-        "longest exposure requested."
+        + ("" if len(forecast.exposures_s) == 1 else "longest ")
+        + "exposure requested."
     )
     return picture(
         "share",
@@ -65,8 +63,11 @@ def precision_picture(forecast: Forecast) -> Picture | None:
         "" if forecast.is_geometry_known else "; band: the 16–84 per cent range over the geometries"
     )
     median = "" if forecast.is_geometry_known else ", median"
+    is_one = len(forecast.exposures_s) == 1
+    line, dotted = ("Disc", "Square") if is_one else ("Line", "Dotted")
     caption = (
-        f"One sigma over the value, against exposure. Line: from the data{median}{spread}. Dotted: "
+        "One sigma over the value, against exposure. "
+        f"{line}: from the data{median}{spread}. {dotted}: "
         "with the flat priors on mass and radius as well. Grey lines with their numbers: the "
         "goals. Open circles: prior-limited, no measurement."
     )
@@ -85,34 +86,6 @@ def precision_picture(forecast: Forecast) -> Picture | None:
         partial(_draw_precision, forecast, quantities),
         caption=caption,
         alternative=alternative,
-    )
-
-
-def ellipse_picture(forecast: Forecast) -> Picture | None:
-    """Return ellipses of mass and radius at up to three exposures; None where there are none."""
-    indices = [
-        index
-        for index in sorted(
-            {0, (len(forecast.exposures_s) - 1) // 2, len(forecast.exposures_s) - 1}
-        )
-        if _is_proper(forecast.covariance_mass_radius[index])
-    ]
-    if not indices:
-        return None
-    times = ", ".join(duration(float(forecast.exposures_s[index])) for index in indices)
-    where = "the geometry given" if forecast.is_geometry_known else "the median geometry"
-    limited = [
-        quantity
-        for quantity in ("radius", "mass")
-        if forecast.curve(quantity).is_prior_limited[indices[-1]]
-    ]
-    remark = f" The {' and the '.join(limited)} stays prior-limited." if limited else ""
-    return picture(
-        "ellipses",
-        partial(_draw_ellipses, forecast, indices),
-        caption=f"Mass and radius together at {where} after {times}, with every prior. Each "
-        f"ellipse holds 68 per cent of the joint probability.{remark}",
-        alternative=f"Ellipses of mass against radius that shrink with exposure ({times}).",
     )
 
 
@@ -163,7 +136,10 @@ def _draw_share(forecast: Forecast) -> Figure:
 def _time_range(forecast: Forecast, every: tuple[Cost, ...]) -> tuple[float, float]:
     """Return the exposures between which something happens."""
     finite = [
-        time for cost in every for time in (cost.p16, cost.p84) if 0.0 < time <= cost.longest_s
+        time
+        for cost in every
+        for time in (cost.p16, cost.p50, cost.p84)
+        if 0.0 < time <= cost.longest_s
     ]
     start = min([float(forecast.exposures_s[0]), *(0.7 * time for time in finite)])
     end = max([float(forecast.exposures_s[-1]), *(1.4 * time for time in finite)])
@@ -178,9 +154,9 @@ def _draw_precision(forecast: Forecast, quantities: tuple[QuantityName, ...]) ->
     times = forecast.exposures_s
     start, end = float(times[0]), float(times[-1])
     if end <= start:
-        start, end = 0.5 * start, 2.0 * end
+        start, end = 0.7 * start, 1.4 * end
     for panel, quantity in zip(panels, quantities, strict=True):
-        time_axis(panel, start, end)
+        time_axis(panel, start, end, only=None if len(times) > 1 else float(times[0]))
         panel.set_xlabel("")
         _draw_curve(panel, forecast, quantity)
     panels[-1].set_xlabel("good on-source time")
@@ -216,7 +192,15 @@ def _draw_curve(axes: Axes, forecast: Forecast, quantity: QuantityName) -> None:
         else:
             axes.fill_between(times, floor, roof, color=color, alpha=0.16, linewidth=0.0)
     axes.plot(times, np.where(np.isfinite(middle), middle, beyond), color=color, marker=marker)
-    axes.plot(times, held, color=color, linestyle=(0, (1.0, 1.6)), linewidth=1.2, marker=marker)
+    axes.plot(
+        times,
+        held,
+        color=color,
+        linestyle=(0, (1.0, 1.6)),
+        linewidth=1.2,
+        marker="s" if marker else None,
+        markerfacecolor="none",
+    )
     limited = np.array(curve.is_prior_limited) & np.isfinite(middle)
     axes.plot(
         times[limited],
@@ -252,30 +236,3 @@ def _limits(values: Floats) -> tuple[float, float]:
     low, high = float(finite.min()) / 1.25, float(finite.max()) * 1.25
     high = min(high, 300.0) if low < 100.0 else high
     return (low, high) if high > 3.0 * low else (low / 1.6, high * 1.6)
-
-
-def _is_proper(covariance: Floats) -> bool:
-    return bool(np.all(np.isfinite(covariance)) and np.linalg.eigvalsh(covariance)[1] > 0.0)
-
-
-def _draw_ellipses(forecast: Forecast, indices: list[int]) -> Figure:
-    figure = new_figure(3.4)
-    axes = figure.add_subplot()
-    angle = np.linspace(0.0, 2.0 * math.pi, 181)
-    circle = np.stack([np.cos(angle), np.sin(angle)])
-    for number, index in enumerate(indices):
-        values, vectors = np.linalg.eigh(forecast.covariance_mass_radius[index])
-        half_axes = vectors * np.sqrt(np.clip(values, 0.0, None))
-        mass, radius = _JOINT_68 * half_axes @ circle
-        axes.plot(
-            forecast.radius.fiducial + radius,
-            forecast.mass.fiducial + mass,
-            color=COLORS[number],
-            linestyle=DASHES[number],
-            label=duration(float(forecast.exposures_s[index])),
-        )
-    axes.plot(forecast.radius.fiducial, forecast.mass.fiducial, "+", color=INK, markersize=8)
-    axes.set_xlabel("equatorial radius (km)")
-    axes.set_ylabel("mass (Msun)")
-    legend_above(axes, 3)
-    return figure

@@ -89,15 +89,33 @@ def costs(forecast: Forecast) -> tuple[Cost, ...]:
 def is_prior_limited(forecast: Forecast, cost: Cost) -> bool:
     """Say whether a goal is met, at the median geometry, by the prior more than by the data.
 
-    Judged at the last exposure forecast that is no longer than the median of the cost.
+    Parameters
+    ----------
+    forecast : Forecast
+        The answer of the main job.
+    cost : Cost
+        Of one of its goals; its median exposure is judged.
+
+    Notes
+    -----
+    Information grows with exposure, so that the exposures forecast on both sides decide where
+    they agree. Between them, and beyond them, one sigma at the goal is compared with the prior:
+    with a flat one as it is, for the data's sigma leaves it out; with a Gaussian one over the
+    root of 2, where prior and all else tell as much.
     """
-    flags = forecast.curve(cost.goal.quantity).is_prior_limited
-    reached = [
-        flag
-        for time, flag in zip(forecast.exposures_s, flags, strict=True)
-        if time <= cost.p50 / (1.0 + forecast.margin) * (1.0 + 1e-9)
-    ]
-    return bool(reached[-1] if reached else flags[0])
+    curve = forecast.curve(cost.goal.quantity)
+    flags = np.array(curve.is_prior_limited)
+    exposure_s = cost.p50 / (1.0 + forecast.margin)
+    before = flags[forecast.exposures_s <= exposure_s * (1.0 + 1e-9)]
+    after = flags[forecast.exposures_s >= exposure_s * (1.0 - 1e-9)]
+    if before.size and not before[-1]:
+        return False
+    if after.size and after[0]:
+        return True
+    given = {"mass": forecast.target.mass, "radius": forecast.target.radius}.get(cost.goal.quantity)
+    is_gaussian = given is not None and given.uncertainty is not None
+    equal = curve.prior_sigma / math.sqrt(2.0) if is_gaussian else curve.prior_sigma
+    return cost.goal.precision * abs(curve.fiducial) > equal
 
 
 def requested_exposure_s(forecast: Forecast) -> float:

@@ -108,10 +108,17 @@ def reading(forecast: Forecast) -> str:
     """Return how the tables of precision are read."""
     median = "" if forecast.is_geometry_known else "median over the geometries, "
     spread = "" if forecast.is_geometry_known else ", with its 16–84 per cent range"
+    relative = (
+        ""
+        if forecast.is_geometry_known
+        else " relative: to the value of the median geometry, in the caption; a goal is judged at "
+        "each geometry's own value."
+    )
     return (
         f"data sigma: {median}from the data and every measured constraint{spread}; sigma: "
         f"{median}with the flat priors on mass and radius as well. {PRIOR_LIMITED}: what was known "
         "beforehand says more than the data and all else; not to be quoted as a measurement."
+        f"{relative}"
     )
 
 

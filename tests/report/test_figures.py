@@ -14,7 +14,7 @@ from xml.etree import ElementTree
 import numpy as np
 import pytest
 
-from exptime.report import data_figures, figures
+from exptime.report import data_figures, ellipses, figures
 from exptime.report.drawing import COLORS, VARIABLES, Picture
 from exptime.study.records import Forecast
 from tests.report import results
@@ -23,7 +23,7 @@ from tests.report.results import STATES
 MAKERS: dict[str, Callable[[Forecast], Picture | None]] = {
     "share": figures.share_picture,
     "precision": figures.precision_picture,
-    "ellipses": figures.ellipse_picture,
+    "ellipses": ellipses.ellipse_picture,
     "pulse": data_figures.pulse_picture,
     "spectrum": data_figures.spectrum_picture,
 }
@@ -57,7 +57,7 @@ def test_figures_without_meaning_are_left_out() -> None:
     dark = results.expected()
     dark = replace(dark, source_per_s=np.zeros_like(dark.source_per_s))
     assert figures.share_picture(results.known_geometry()) is None
-    assert figures.ellipse_picture(results.unconstrained()) is None
+    assert ellipses.ellipse_picture(results.unconstrained()) is None
     assert data_figures.pulse_picture(replace(results.normal(), expected=dark)) is None
     assert data_figures.spectrum_picture(replace(results.normal(), expected=dark)) is None
 
@@ -145,7 +145,7 @@ def test_the_share_curve_counts_geometries(factor: float, forecast: str) -> None
 def test_the_ellipse_holds_68_per_cent_of_the_joint_probability() -> None:
     """Two hundred thousand draws from the covariance: 0.6827 within four standard errors."""
     forecast = results.normal()
-    figure = figures._draw_ellipses(forecast, [4])
+    figure = ellipses._draw_ellipses(forecast, [4])
     radius, mass = (np.asarray(each, float) for each in figure.axes[0].lines[0].get_data())
     from matplotlib.path import Path
 

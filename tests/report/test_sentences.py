@@ -13,6 +13,7 @@ from exptime.report.feasibility import feasibility
 from exptime.report.goals import costs, exposure_factor_at_half_brightness
 from exptime.report.sentences import answers, headline, notes_on_goals
 from exptime.study.records import ExpectedData
+from exptime.target.records import Measured
 from tests.report import results
 from tests.report.results import EXPOSURES_S, STATES
 
@@ -77,6 +78,42 @@ def test_a_prior_limited_goal_says_so_before_any_exposure() -> None:
     """It cannot be quoted as a measurement without its warning."""
     second = answers(results.prior_limited())[1]
     assert second.index("prior-limited") < second.index("200 ks")
+
+
+@pytest.mark.parametrize(
+    ("required_s", "precision", "flags", "uncertainty", "is_limited"),
+    [
+        (2e5, 0.05, (True, True, True, False, False), None, True),
+        (6e5, 0.05, (True, True, True, False, False), None, False),
+        # Beyond all exposures: 0.6 km is well below the 2.02 km of the flat prior.
+        (5e7, 0.05, (True,) * 5, None, False),
+        (5e7, 0.2, (True,) * 5, None, True),
+        # A Gaussian prior of 0.8 km leaves 0.8 / sqrt(2) = 0.57 km where the data tell as much.
+        (5e7, 0.05, (True,) * 5, 0.8, True),
+        (5e7, 0.045, (True,) * 5, 0.8, False),
+        # Before all exposures nothing is known but the size of the goal.
+        (1e3, 0.05, (False,) * 5, None, False),
+        (1e3, 0.2, (False,) * 5, None, True),
+    ],
+)
+def test_prior_limited_is_judged_where_the_goal_is_met(
+    required_s: float,
+    precision: float,
+    flags: tuple[bool, ...],
+    uncertainty: float | None,
+    is_limited: bool,
+) -> None:
+    """Not at the exposures that happen to be forecast."""
+    base = results.normal()
+    goal = results.goal_result("radius", precision, np.full(50, required_s), (required_s,) * 3)
+    radius = Measured(value=12.0, uncertainty=uncertainty) if uncertainty else None
+    forecast = replace(
+        base,
+        target=replace(base.target, radius=radius),
+        radius=replace(base.radius, is_prior_limited=flags, prior_sigma=uncertainty or 2.02),
+        goals=(goal,),
+    )
+    assert ("prior-limited" in headline(forecast)) is is_limited
 
 
 def test_known_geometry_that_needs_longer_says_so() -> None:
