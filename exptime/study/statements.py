@@ -12,15 +12,15 @@ from exptime.instrument.records import Instrument
 from exptime.study.case import Case
 from exptime.study.geometries import Draws, GeometrySet
 from exptime.target.defaults import FIXED_MASS_MSUN, FIXED_RADIUS_KM
+from exptime.target.fields import TARGET_FIELDS
 from exptime.target.records import Target
 
 _FEWEST_EFFECTIVE = 50.0
 _MANY_FLOORED = 0.25
-_FEW_COUNTS = 1e4
 
 _ABUNDANCES = {
-    "interstellar": "interstellar abundances of Wilms, Allen & McCray (2000), atoms only",
-    "solar-1982": "solar abundances of Anders & Ebihara (1982)",
+    "interstellar": "the interstellar abundances of Wilms, Allen & McCray (2000), atoms only",
+    "solar-1982": "the solar abundances of Anders & Ebihara (1982)",
 }
 
 
@@ -38,26 +38,43 @@ def assumptions_of(
     is_known : bool
         Whether the target file gave hot spots.
     """
-    emission = target.emission
-    law = (
-        "a blackbody"
-        if emission.model == "blackbody"
-        else f"a blackbody spectrum with intensity in proportion to 1 + {emission.coefficient:g} mu"
-    )
     sentences = [
-        f"The hot spots radiate as {law}; the rest of the surface is dark.",
-        f"Interstellar absorption: {_ABUNDANCES[target.abundances]}.",
-        "Light bends as around a star that does not drag space along; the surface is "
-        + ("a sphere." if target.figure == "sphere" else "oblate (AlGendy & Morsink 2014)."),
+        "The surface outside the hot spots is dark.",
+        "Light bends as around a star that does not drag space along.",
+        *_laws(target),
     ]
-    if not is_known and draws.is_star_fixed and (target.mass is None or target.radius is None):
-        sentences.append(
-            f"What was not given of the star is held at {FIXED_MASS_MSUN:g} Msun and "
-            f"{FIXED_RADIUS_KM:g} km in the draws."
-        )
+    if not is_known and draws.is_star_fixed:
+        held = [
+            f"the {name} at {value:g} {unit}"
+            for name, given, value, unit in (
+                ("mass", target.mass, FIXED_MASS_MSUN, "Msun"),
+                ("radius", target.radius, FIXED_RADIUS_KM, "km"),
+            )
+            if given is None
+        ]
+        if held:
+            sentences.append(f"Geometries are drawn with {' and '.join(held)}, as asked.")
     if not is_known and target.radius is not None and target.mass is not None:
         sentences.append("Geometries are drawn for the star at the mass and radius given.")
     return (*target.assumptions, *instrument.assumptions, *sentences)
+
+
+def _laws(target: Target) -> list[str]:
+    """Return what was chosen where the target's own sentences do not say it."""
+    emission = target.emission
+    law = "a blackbody"
+    if emission.model == "limb-darkened":
+        law = (
+            f"a blackbody spectrum, its intensity in proportion to 1 + {emission.coefficient:g} mu"
+        )
+    shape = "a sphere" if target.figure == "sphere" else "oblate (AlGendy & Morsink 2014)"
+    sentences = {
+        "emission": f"The hot spots radiate as {law}.",
+        "abundances": f"The column has {_ABUNDANCES[target.abundances]}.",
+        "figure": f"The surface is {shape}.",
+    }
+    said = {each.key for each in TARGET_FIELDS if each.assumption in target.assumptions}
+    return [sentence for key, sentence in sentences.items() if key not in said]
 
 
 def warnings_of(

@@ -194,7 +194,8 @@ TARGET_FIELDS: Final[tuple[Field, ...]] = (
         example="interstellar",
         choices=("interstellar", "solar-1982"),
         default="interstellar",
-        assumption="The column has interstellar abundances (Wilms et al. 2000).",
+        assumption="The column has the interstellar abundances of Wilms, Allen & McCray (2000), "
+        "atoms only (abundances were not given).",
     ),
     TEMPERATURE,
     measured(
@@ -238,7 +239,7 @@ TARGET_FIELDS: Final[tuple[Field, ...]] = (
         example="oblate",
         choices=("oblate", "sphere"),
         default="oblate",
-        assumption="The star is oblate from its rotation (figure was not given).",
+        assumption="The surface is oblate (AlGendy & Morsink 2014; figure was not given).",
     ),
     EMISSION,
     HOT_SPOTS,
