@@ -113,7 +113,7 @@ def geometries_of(
         When nothing reproduces what was measured.
     """
     if target.hot_spots is not None:
-        return _known(target, absorption, read_instrument)
+        return known_geometries(target, absorption, read_instrument)
     if target.flux is None:
         raise ValueError("a target without hot spots needs a flux")
     search = Search(
@@ -164,9 +164,21 @@ def known_geometry(target: Target) -> Geometry:
     return star, spots
 
 
-def _known(
+def known_geometries(
     target: Target, absorption: Absorption, read_instrument: InstrumentReader
 ) -> GeometrySet:
+    """Return the one geometry of a target with hot spots, compared with what was measured.
+
+    Parameters
+    ----------
+    target, absorption, read_instrument
+        As for `geometries_of`.
+
+    Raises
+    ------
+    OutOfRangeError
+        For a star outside the model.
+    """
     star, spots = known_geometry(target)
     scene = scene_of(target, star, spots)
     fractions, warnings = np.empty(0), []

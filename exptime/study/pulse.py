@@ -21,7 +21,7 @@ from exptime.progress import Progress, silent
 from exptime.star.convergence import photon_flux
 from exptime.study.case import Geometry, Question, resolutions_for, scene_of
 from exptime.study.forecast import make_forecast
-from exptime.study.geometries import Draws, InstrumentReader, known_geometry
+from exptime.study.geometries import Draws, InstrumentReader, known_geometries
 from exptime.study.records import Counts, Pulse
 from exptime.target.records import Target
 
@@ -142,7 +142,8 @@ def _geometry(
 ) -> tuple[Geometry, tuple[str, ...]]:
     """Return the given geometry, or the median one of a forecast, with notes."""
     if target.hot_spots is not None:
-        return known_geometry(target), (*target.assumptions, *target.warnings)
+        known = known_geometries(target, load_absorption(target.abundances), read_instrument)
+        return known.geometries[0], (*target.assumptions, *target.warnings, *known.warnings)
     forecast = make_forecast(
         target,
         instrument,
@@ -157,7 +158,8 @@ def _geometry(
         f"The pulse is that of the median geometry: of {len(forecast.geometries)} drawn ones, the "
         f"one whose uncertainty of the radius, seen with {instrument.name}, is nearest the median."
     )
-    return (chosen.star, chosen.spots), (note, *target.assumptions, *target.warnings)
+    doubts = [text for text in forecast.warnings if text not in instrument.warnings]
+    return (chosen.star, chosen.spots), (note, *target.assumptions, *doubts)
 
 
 def _ideal_detector(target: Target) -> Instrument:
