@@ -14,8 +14,11 @@ import pytest
 from exptime.arrays import Floats
 from exptime.interstellar.absorption import load_absorption
 from exptime.tables.absorption import SOLAR_1982, helium_cm2, hydrogen_cm2, metal_cm2
+from tests.external.recording import Checks
 
 pytestmark = pytest.mark.external
+
+MORRISON = "Morrison & McCammon 1983, ApJ 270, 119, table 2"
 
 POLYNOMIAL = np.array(
     [
@@ -94,12 +97,16 @@ def steps(rows: Floats) -> Floats:
     return above / below - 1.0
 
 
-def test_every_boundary_of_the_published_table_steps_up() -> None:
+def test_every_boundary_of_the_published_table_steps_up(checks: Checks) -> None:
     """An absorption edge adds absorption; the wrong sign at 4 keV would take 3.7 % away."""
     rises = steps(POLYNOMIAL)
     assert (rises > 0.0).all()
     assert rises[0] == pytest.approx(0.0003, abs=5e-5)
-    np.testing.assert_allclose(100.0 * rises[1:], STEPS_PER_CENT, atol=0.06)
+    checks.close(
+        "rises of the 1983 polynomial at its boundaries (%)", 100.0 * rises[1:], STEPS_PER_CENT,
+        absolute=0.06, at=[f"{energy:g} keV" for energy in POLYNOMIAL[2:, 0]], source=MORRISON,
+        kind="published", note="copies with -0.75 in the row of 4.038 keV would step down",
+    )  # fmt: skip
     wrong = POLYNOMIAL.copy()
     wrong[11, 3] = -0.75
     assert steps(wrong).min() == pytest.approx(-0.037, abs=1e-3)
@@ -110,7 +117,7 @@ def test_every_boundary_of_the_published_table_steps_up() -> None:
     [(0.1, 0.54, 0.17), (0.54, 0.9, 0.09), (0.9, 1.5, 0.05), (1.5, 3.0, 0.04), (3.0, 10.0, 0.02)],
 )
 def test_solar_gas_agrees_with_morrison_and_mccammon(
-    low: float, high: float, tolerance: float
+    checks: Checks, low: float, high: float, tolerance: float
 ) -> None:
     """Away from the edges, whose energies differ between old and new data by up to 3 %.
 
@@ -125,10 +132,14 @@ def test_solar_gas_agrees_with_morrison_and_mccammon(
     energies = energies[distance > 0.03]
     assert len(energies) > 80
     ratio = absorption.cross_section_cm2(energies) / published(energies)
-    np.testing.assert_allclose(ratio, 1.0, atol=tolerance)
+    checks.close(
+        "solar gas over the 1983 polynomial, away from edges", ratio, 1.0, absolute=tolerance,
+        at=f"{low:g} to {high:g} keV", source=MORRISON, kind="published",
+        note="better helium and metals since; helium decides below the edge of oxygen",
+    )  # fmt: skip
 
 
-def test_difference_from_the_published_polynomial_is_the_expected_one() -> None:
+def test_difference_from_the_published_polynomial_is_the_expected_one(checks: Checks) -> None:
     """With their seventeen elements, to the tenth of a per cent that was noted.
 
     The four rarer ones that the shipped table has beside them add at most 0.9 per cent.
@@ -137,13 +148,18 @@ def test_difference_from_the_published_polynomial_is_the_expected_one() -> None:
     theirs = hydrogen_cm2(energies) + SOLAR_1982["He"] * helium_cm2(energies)
     theirs += sum(SOLAR_1982[atom] * metal_cm2(atom, energies) for atom in THEIR_METALS)
     excess = 100.0 * (theirs / published(energies) - 1.0)
-    np.testing.assert_allclose(excess, list(CLOSE.values()), atol=0.06)
+    checks.close(
+        "solar gas above the 1983 polynomial, seventeen elements (%)", excess,
+        list(CLOSE.values()), absolute=0.06, at=[f"{energy:g} keV" for energy in CLOSE],
+        source="periodictable 2.1 (Henke et al. 1993) with exact H and He of Yan et al. 1998",
+        kind="computed independently",
+    )  # fmt: skip
     more = load_absorption("solar-1982").cross_section_cm2(energies) / theirs - 1.0
     assert (more > -3e-4).all()
     assert (more < 9e-3).all()
 
 
-def test_interstellar_gas_absorbs_less_by_the_known_ratio() -> None:
+def test_interstellar_gas_absorbs_less_by_the_known_ratio(checks: Checks) -> None:
     """Wilms et al. over Morrison & McCammon, worked out beforehand with other metals.
 
     Those are of Elam, Ravel & Sieber 2002, which differ from Henke's by up to 3 % of the total.
@@ -151,26 +167,47 @@ def test_interstellar_gas_absorbs_less_by_the_known_ratio() -> None:
     energies = np.array([0.1, 0.2, 0.3, 0.5, 0.6, 1.0, 2.0, 5.0, 8.0])
     expected = [1.06, 0.96, 0.86, 0.84, 0.74, 0.73, 0.68, 0.68, 0.75]
     ratio = load_absorption("interstellar").cross_section_cm2(energies) / published(energies)
-    np.testing.assert_allclose(ratio, expected, rtol=0.035)
+    checks.close(
+        "interstellar gas over the 1983 polynomial", ratio, expected, relative=0.035,
+        at=[f"{energy:g} keV" for energy in energies], kind="computed independently",
+        source="abundances of Wilms, Allen & McCray 2000, ApJ 542, 914; metals of xraydb 4.5.8",
+    )  # fmt: skip
 
 
-def test_light_atoms_have_their_closed_forms() -> None:
+def test_light_atoms_have_their_closed_forms(checks: Checks) -> None:
     """Five digits noted for helium (Yan et al.) and hydrogen (Stobbe), three for the ratio."""
     energies = np.array(list(LIGHT))
     helium, ratio, hydrogen = np.array(list(LIGHT.values())).T
-    np.testing.assert_allclose(helium_cm2(energies), helium, rtol=5e-5)
-    np.testing.assert_allclose(hydrogen_cm2(energies), hydrogen, rtol=4e-5)
+    at = [f"{energy:g} keV" for energy in energies]
+    checks.close(
+        "helium (cm²)", helium_cm2(energies), helium, relative=5e-5, at=at,
+        source="Yan, Sadeghpour & Dalgarno 1998, ApJ 496, 1044, fit", kind="published",
+    )  # fmt: skip
+    checks.close(
+        "hydrogen (cm²)", hydrogen_cm2(energies), hydrogen, relative=4e-5, at=at,
+        source="Stobbe 1930, Ann. Phys. 399, 661, exact atom", kind="computed independently",
+    )  # fmt: skip
     fit = verner(1e3 * energies, 13.61, 949.2, 1.469, 3.188, 2.039, 0.4434, 2.136)
-    np.testing.assert_allclose(fit / helium_cm2(energies), ratio, atol=6e-4)
+    checks.close(
+        "fit of Verner et al. over our helium", fit / helium_cm2(energies), ratio, absolute=6e-4,
+        at=at, source="Verner, Ferland, Korista & Yakovlev 1996, ApJ 465, 487", kind="published",
+        note="that fit sags above 0.2 keV",
+    )  # fmt: skip
 
 
-def test_hydrogen_agrees_with_an_independent_fit() -> None:
+def test_hydrogen_agrees_with_an_independent_fit(checks: Checks) -> None:
     """Verner et al. 1996 fit the exact atom to half a per cent from above the threshold on."""
     energies = np.geomspace(0.016, 3.0, 60)
     fit = verner(1e3 * energies, 0.4298, 5.475e4, 32.88, 2.963, 0.0, 0.0, 0.0)
-    np.testing.assert_allclose(hydrogen_cm2(energies) / fit, 1.0, atol=5e-3)
+    checks.close(
+        "hydrogen over the fit of Verner et al.", hydrogen_cm2(energies) / fit, 1.0, absolute=5e-3,
+        source="Verner, Ferland, Korista & Yakovlev 1996, ApJ 465, 487", kind="published",
+    )  # fmt: skip
 
 
-def test_hydrogen_at_threshold_is_the_textbook_value() -> None:
+def test_hydrogen_at_threshold_is_the_textbook_value(checks: Checks) -> None:
     """6.30e-18 cm², e.g. Osterbrock & Ferland 2006, section 2.1."""
-    assert hydrogen_cm2(np.array([0.013598431]))[0] == pytest.approx(6.30e-18, rel=2e-3)
+    checks.close(
+        "hydrogen at its threshold (cm²)", hydrogen_cm2(np.array([0.013598431])), 6.30e-18,
+        relative=2e-3, source="Osterbrock & Ferland 2006, section 2.1", kind="published",
+    )  # fmt: skip

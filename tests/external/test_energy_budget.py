@@ -20,6 +20,7 @@ from exptime.arrays import Floats
 from exptime.constants import BLACKBODY_PHOTONS, PARSEC_KM, SOLAR_MASS_KM
 from exptime.star.convergence import photon_flux
 from exptime.star.records import Emission, HotSpot, Star
+from tests.external.recording import Checks
 
 pytestmark = pytest.mark.external
 
@@ -28,6 +29,7 @@ DISTANCE_PC = 300.0
 BLACKBODY = Emission()
 DARKENED = Emission(model="limb-darkened", coefficient=0.7)
 APERY = 1.2020569031595942
+CONSERVATION = "closed form, from conservation of photons and energy"
 
 
 def sphere(spin_hz: float, cos_inclination: float, u: float = 0.34, radius: float = 12.0) -> Star:
@@ -65,7 +67,7 @@ def logarithmic_energies(count: int = 200) -> tuple[Floats, Floats]:
 @pytest.mark.parametrize("cos_inclination", [0.0, 0.5, 1.0])
 @pytest.mark.parametrize("u", [0.1, 0.34, 0.5])
 def test_whole_still_star_is_its_apparent_disc(
-    u: float, cos_inclination: float, emission: Emission
+    checks: Checks, u: float, cos_inclination: float, emission: Emission
 ) -> None:
     """Flux = pi (R_inf/D)² B(E, T sqrt(1-u)) at any inclination and darkening.
 
@@ -77,11 +79,15 @@ def test_whole_still_star_is_its_apparent_disc(
     flux = photon_flux(star, WHOLE, emission, DISTANCE_PC, energies, 8)
     apparent = star.radius_km / math.sqrt(1.0 - u) / (DISTANCE_PC * PARSEC_KM)
     expected = math.pi * apparent**2 * planck(energies, KEV * math.sqrt(1.0 - u))
-    np.testing.assert_allclose(flux, np.broadcast_to(expected, flux.shape), rtol=2e-6)
+    checks.close(
+        "whole still star: its apparent disc at the redshifted temperature", flux, expected,
+        relative=2e-6, at=f"u = {u:g}, {emission.model}",
+        source=CONSERVATION, kind="computed independently",
+    )  # fmt: skip
 
 
 @pytest.mark.parametrize("cos_inclination", [0.1, 0.7])
-def test_one_spot_of_radius_pi_covers_the_star(cos_inclination: float) -> None:
+def test_one_spot_of_radius_pi_covers_the_star(checks: Checks, cos_inclination: float) -> None:
     """The spot that is the whole star, wherever it is centred."""
     star = sphere(0.01, cos_inclination)
     energies = np.array([0.3, 1.0])
@@ -89,10 +95,13 @@ def test_one_spot_of_radius_pi_covers_the_star(cos_inclination: float) -> None:
     expected = math.pi * apparent**2 * planck(energies, KEV * math.sqrt(1.0 - 0.34))
     for colatitude in (0.0, 1.1):
         flux = photon_flux(star, [cap(colatitude, math.pi)], BLACKBODY, DISTANCE_PC, energies, 8)
-        np.testing.assert_allclose(flux, np.broadcast_to(expected, flux.shape), rtol=2e-6)
+        checks.close(
+            "one spot of radius pi: the same disc", flux, expected, relative=2e-6,
+            source=CONSERVATION, kind="computed independently",
+        )  # fmt: skip
 
 
-def test_flat_space_shows_a_spot_by_its_cosine() -> None:
+def test_flat_space_shows_a_spot_by_its_cosine(checks: Checks) -> None:
     """For u = 1e-9: mean projected area of a small cap that never sets, and its pulse.
 
     A cap of radius rho has the projected area pi sin²(rho) cos(psi) R². Bins average cos(phi) by
@@ -108,7 +117,10 @@ def test_flat_space_shows_a_spot_by_its_cosine() -> None:
     cosine = cos_i * math.cos(theta) + swing * np.cos(phi) * np.sinc(1.0 / bins)
     area = math.pi * math.sin(rho) ** 2 * (star.radius_km / (DISTANCE_PC * PARSEC_KM)) ** 2
     expected = area * cosine * planck(energies, KEV)
-    np.testing.assert_allclose(flux, expected, atol=2e-6 * expected.max())
+    checks.close(
+        "flat space: projected area of a cap over a turn", flux / expected.max(),
+        expected / expected.max(), absolute=2e-6, source="geometry", kind="computed independently",
+    )  # fmt: skip
 
 
 def over_the_sky(
@@ -153,7 +165,7 @@ def photons_emitted(star: Star, spot: HotSpot) -> float:
     ],
 )
 def test_every_photon_of_a_spinning_sphere_crosses_the_sky(
-    spin_hz: float, colatitude: float, radius: float
+    checks: Checks, spin_hz: float, colatitude: float, radius: float
 ) -> None:
     """Photon number over the sky against photons emitted: Doppler, area, delay, bending at once.
 
@@ -163,25 +175,38 @@ def test_every_photon_of_a_spinning_sphere_crosses_the_sky(
     star, spot = sphere(spin_hz, 0.5), cap(colatitude, radius)
     energies, weight = logarithmic_energies(60)
     number = float(weight @ over_the_sky(star, [spot], BLACKBODY, energies, 16))
-    assert number == pytest.approx(photons_emitted(star, spot), rel=1e-5)
+    checks.close(
+        "photons of a spinning sphere over the whole sky, over those emitted",
+        number / photons_emitted(star, spot), 1.0, relative=1e-5,
+        at=f"{spin_hz:g} Hz, colatitude {colatitude:g}",
+        source=CONSERVATION, kind="computed independently",
+    )  # fmt: skip
 
 
-def test_darkening_leaves_the_number_of_photons() -> None:
+def test_darkening_leaves_the_number_of_photons(checks: Checks) -> None:
     """The angular law redistributes photons over the sky, by the comoving angle at any speed."""
     star, spot = sphere(600.0, 0.5), cap(1.3, 0.4)
     energies, weight = logarithmic_energies(60)
     number = float(weight @ over_the_sky(star, [spot], DARKENED, energies, 16))
-    assert number == pytest.approx(photons_emitted(star, spot), rel=1e-5)
+    checks.close(
+        "limb-darkened photons at 600 Hz over the whole sky, over those emitted",
+        number / photons_emitted(star, spot), 1.0, relative=1e-5,
+        source=CONSERVATION, kind="computed independently",
+    )  # fmt: skip
 
 
-def test_luminosity_at_infinity_is_redshifted_twice() -> None:
+def test_luminosity_at_infinity_is_redshifted_twice(checks: Checks) -> None:
     """Still sphere with one spot: energy over the sky is L (1-u), L = area times sigma T⁴."""
     star, spot = sphere(0.01, 0.5), cap(1.0, 0.4)
     energies, weight = logarithmic_energies(60)
     power = float((weight * energies) @ over_the_sky(star, [spot], BLACKBODY, energies, 16))
     area = 2.0 * math.pi * (1.0 - math.cos(0.4)) * (star.radius_km * 1e5) ** 2
     local = BLACKBODY_PHOTONS * math.pi**5 / 15.0 * KEV**4 * area
-    assert power == pytest.approx(local * (1.0 - 0.34), rel=1e-5)
+    checks.close(
+        "energy over the whole sky, over area times sigma T⁴ times (1-u)",
+        power / (local * (1.0 - 0.34)), 1.0, relative=1e-5,
+        source=CONSERVATION, kind="computed independently",
+    )  # fmt: skip
 
 
 def budget_of_an_oblate_spot(star: Star, spot: HotSpot) -> tuple[float, float]:
@@ -221,7 +246,7 @@ def budget_of_an_oblate_spot(star: Star, spot: HotSpot) -> tuple[float, float]:
     ],
 )
 def test_budget_of_a_spinning_oblate_star(
-    colatitude: float, radius: float, emission: Emission
+    checks: Checks, colatitude: float, radius: float, emission: Emission
 ) -> None:
     """Photons and energy over the sky against those emitted, at 700 Hz on the oblate figure.
 
@@ -232,5 +257,13 @@ def test_budget_of_a_spinning_oblate_star(
     energies, weight = logarithmic_energies(60)
     spectrum = over_the_sky(star, [spot], emission, energies, 16)
     photons, energy = budget_of_an_oblate_spot(star, spot)
-    assert float(weight @ spectrum) == pytest.approx(photons, rel=1e-5)
-    assert float((weight * energies) @ spectrum) == pytest.approx(energy, rel=1e-5)
+    for name, sent, arrived in (
+        ("photons", photons, float(weight @ spectrum)),
+        ("energy", energy, float((weight * energies) @ spectrum)),
+    ):
+        checks.close(
+            "oblate star at 700 Hz: what crosses the whole sky, over what is emitted",
+            arrived / sent, 1.0, relative=1e-5, at=f"{name}, {emission.model}",
+            source="conservation, on the figure of AlGendy & Morsink 2014, ApJ 791, 78",
+            kind="computed independently",
+        )  # fmt: skip

@@ -16,6 +16,7 @@ from exptime.information.precision import Experiment, precision_at, required_exp
 from exptime.instrument.records import BackgroundKnowledge
 from exptime.observation.linearise import linearise
 from exptime.star.resolution import Resolution
+from tests.external.recording import Checks
 from tests.makers.scenes import experiment_of, star_of, toy_edges, toy_response, two_spot_scene
 
 pytestmark = pytest.mark.external
@@ -36,20 +37,27 @@ def bare(request: pytest.FixtureRequest) -> Experiment:
     return replace(experiment, parameters=parameters)
 
 
-def test_sigma_falls_with_the_root_of_exposure(bare: Experiment) -> None:
+def test_sigma_falls_with_the_root_of_exposure(checks: Checks, bare: Experiment) -> None:
     """Four decades, to 1e-9."""
     reference = precision_at(bare, 1e5)
     assert np.isfinite(reference.sigma).all()
     for exposure in (1e4, 1e6, 1e8):
         scaled = precision_at(bare, exposure)
         factor = math.sqrt(1e5 / exposure)
-        np.testing.assert_allclose(scaled.sigma, factor * reference.sigma, rtol=1e-9)
+        checks.close(
+            "sigma over its value at 1e5 s, by the root of exposure",
+            scaled.sigma / reference.sigma, factor, relative=1e-9, at=f"{exposure:g} s",
+            source="Cramér 1946; Rao 1945: information adds", kind="computed independently",
+        )  # fmt: skip
         np.testing.assert_allclose(scaled.data_sigma, factor * reference.sigma, rtol=1e-9)
 
 
-def test_half_the_error_takes_four_times_the_exposure(bare: Experiment) -> None:
+def test_half_the_error_takes_four_times_the_exposure(checks: Checks, bare: Experiment) -> None:
     """Through the search for an exposure, good to 1e-6."""
     base = precision_at(bare, 1e6).data_sigma[1] / 12.0
     long, short = (required_exposure(bare, "radius", share * base) for share in (0.5, 1.0))
     assert short == pytest.approx(1e6, rel=3e-6)
-    assert long / short == pytest.approx(4.0, rel=5e-6)
+    checks.close(
+        "exposure for half the error over that for the whole", long / short, 4.0, relative=5e-6,
+        source="Cramér 1946; Rao 1945: information adds", kind="computed independently",
+    )  # fmt: skip

@@ -20,6 +20,7 @@ from exptime.star.ray_table import Bent, load_ray_table
 from exptime.star.records import Emission, HotSpot, Star
 from exptime.star.resolution import Resolution
 from exptime.star.view import view_of
+from tests.external.recording import Checks
 
 pytestmark = pytest.mark.external
 
@@ -58,6 +59,11 @@ FAST = (
     (0.269878698164, 1.02170618138, 0.4577271362562, 2.63707794637, 0.938554831179),
 )
 KEV = 0.1
+RELATIONS = (
+    "Poutanen & Gierlinski 2003, MNRAS 343, 1301; Poutanen & Beloborodov 2006, MNRAS 373, 836; "
+    "worked out with mpmath, 25 digits"
+)
+SIXTEENTHS = [f"phase {k}/16" for k in range(16)]
 POINT = 1e-4
 DISTANCE_PC = 100.0
 
@@ -102,28 +108,40 @@ def still_star(inclination: float) -> Star:
     )
 
 
-def test_rays_give_the_slow_pulse_and_its_antipode() -> None:
+def test_rays_give_the_slow_pulse_and_its_antipode(checks: Checks) -> None:
     """1e-11: the table's digits; the antipode where it shows."""
     table = np.array(SLOW)
     azimuth = 2.0 * math.pi * np.arange(len(table)) / 16.0
     for column, colatitude, turn in ((1, 30.0, 0.0), (2, 150.0, math.pi)):
         bent = bent_towards(THIRD, math.radians(60.0), math.radians(colatitude), azimuth + turn)
         flux = np.maximum(bent.cos_alpha[0], 0.0) * bent.lensing[0] / (1.0 - THIRD)
-        np.testing.assert_allclose(flux, table[:, column], atol=1e-11)
+        checks.close(
+            "slow pulse, i = 60°, theta = 30°, u = 1/3: point and its antipode, f", flux,
+            table[:, column], absolute=1e-11,
+            at=[f"{('spot', 'antipode')[column - 1]}, {label}" for label in SIXTEENTHS[:9]],
+            source=RELATIONS, kind="computed independently",
+        )  # fmt: skip
         if column == 1:
-            np.testing.assert_allclose(
-                np.degrees(np.arccos(bent.cos_alpha[0])), table[:, 0], rtol=1e-11
-            )
+            checks.close(
+                "slow pulse: angle alpha (degrees)", np.degrees(np.arccos(bent.cos_alpha[0])),
+                table[:, 0], relative=1e-11, at=SIXTEENTHS[:9], source=RELATIONS,
+                kind="computed independently",
+            )  # fmt: skip
+    both = table[:, 1] + table[:, 2]
+    assert both[8] == pytest.approx(0.669790030380154, abs=1e-14)
 
 
-def test_pulse_of_a_slow_point_is_the_published_one() -> None:
+def test_pulse_of_a_slow_point_is_the_published_one(checks: Checks) -> None:
     """Energy flux I (1-u)² f dS/D². 1e-8: spot of finite size, 1e-9, and the quadrature."""
     table = np.array(SLOW)
     flux = bolometric(still_star(math.radians(60.0)), math.radians(30.0), np.arange(9) / 16.0)
-    np.testing.assert_allclose(flux / (1.0 - THIRD) ** 2, table[:, 1], rtol=1e-8)
+    checks.close(
+        "slow pulse through the whole pulse model, f", flux / (1.0 - THIRD) ** 2, table[:, 1],
+        relative=1e-8, at=SIXTEENTHS[:9], source=RELATIONS, kind="computed independently",
+    )  # fmt: skip
 
 
-def test_pulse_of_a_fast_point_is_the_published_one() -> None:
+def test_pulse_of_a_fast_point_is_the_published_one(checks: Checks) -> None:
     """Energy flux I (1-u) delta⁵ cos(alpha) dcos(alpha)/dcos(psi) dS'/D² at the arrival phase.
 
     3e-8 of the peak: spot of finite size, expansion in the redshift, and arrival phases that the
@@ -138,10 +156,14 @@ def test_pulse_of_a_fast_point_is_the_published_one() -> None:
         figure="sphere",
     )
     flux = bolometric(star, math.radians(50.0), table[:, 4])
-    np.testing.assert_allclose(flux, table[:, 2], atol=3e-8 * table[:, 2].max())
+    checks.close(
+        "fast pulse, 400 Hz, i = 60°, theta = 50°, through the whole pulse model: bolometric flux",
+        flux, table[:, 2], absolute=3e-8 * table[:, 2].max(), at=SIXTEENTHS, source=RELATIONS,
+        kind="computed independently",
+    )  # fmt: skip
 
 
-def test_delays_of_the_fast_pulse_are_the_published_ones() -> None:
+def test_delays_of_the_fast_pulse_are_the_published_ones(checks: Checks) -> None:
     """Delays behind the radial ray to 1e-10, the table's digits."""
     table = np.array(FAST)
     star = Star(mass_msun=1.4, radius_km=12.0, spin_hz=400.0, cos_inclination=0.5, figure="sphere")
@@ -149,13 +171,18 @@ def test_delays_of_the_fast_pulse_are_the_published_ones() -> None:
     u = 2.0 * star.compactness
     bent = bent_towards(u, math.radians(60.0), math.radians(50.0), azimuth)
     late = bent.delay[0] * star.radius_km / 299792.458
-    np.testing.assert_allclose(late * 1e6, table[:, 3], rtol=1e-10)
-    np.testing.assert_allclose(
-        azimuth / (2.0 * math.pi) + star.spin_hz * late, table[:, 4], rtol=1e-10
-    )
+    checks.close(
+        "fast pulse: delay (microseconds)", late * 1e6, table[:, 3], relative=1e-10,
+        at=SIXTEENTHS, source=RELATIONS, kind="computed independently",
+    )  # fmt: skip
+    checks.close(
+        "fast pulse: arrival phase", azimuth / (2.0 * math.pi) + star.spin_hz * late,
+        table[:, 4], relative=1e-10, at=SIXTEENTHS, source=RELATIONS,
+        kind="computed independently",
+    )  # fmt: skip
 
 
-def test_spot_on_the_limb_of_the_cosine_relation_is_hidden() -> None:
+def test_spot_on_the_limb_of_the_cosine_relation_is_hidden(checks: Checks) -> None:
     """At i = theta = 60 degrees, u = 1/3: psi = 120 degrees at the back, above 119.074.
 
     Beloborodov's relation puts it exactly on the limb. The bins about phase 1/2 hold nothing while
@@ -172,5 +199,9 @@ def test_spot_on_the_limb_of_the_cosine_relation_is_hidden() -> None:
     inside = away + 0.5 / 128 < hidden - 1e-3
     outside = away - 0.5 / 128 > hidden + 1e-3
     assert inside.sum() >= 4
-    assert flux[inside].max() < 1e-6 * flux.max()
+    checks.between(
+        "point at psi = 120° beyond the horizon of 119.074°: flux over its peak",
+        float(flux[inside].max() / flux.max()), -1e-6, 1e-6, theirs="0", source=RELATIONS,
+        kind="computed independently",
+    )  # fmt: skip
     assert flux[outside].min() > 1e-5 * flux.max()

@@ -15,10 +15,12 @@ import pytest
 from exptime.arrays import Floats
 from exptime.information.matrix import background_levels, information_per_second
 from exptime.instrument.records import BackgroundKnowledge
+from tests.external.recording import Checks
 
 pytestmark = pytest.mark.external
 
 PHASE = 2.0 * np.pi * (np.arange(256) + 0.5) / 256
+CRAMER = "Cramér 1946; Rao 1945: expected Fisher matrix of Poisson counts, closed form"
 KNOWN = BackgroundKnowledge(kind="known")
 
 
@@ -47,40 +49,57 @@ def matrix(
         (0.6, 0.69444444, 0.20000000),
     ],
 )
-def test_elements_of_a_sinusoid(amplitude: float, of_amplitude: float, of_phase: float) -> None:
+def test_elements_of_a_sinusoid(
+    checks: Checks, amplitude: float, of_amplitude: float, of_phase: float
+) -> None:
     """Per count, to the eight decimals worked out and to 1e-12 of the formulas."""
     counts = 12345.0
     information = matrix(amplitude, counts) / counts
     root = math.sqrt(1.0 - amplitude**2)
-    assert information[0, 0] == pytest.approx(of_amplitude, abs=5e-9)
-    assert information[1, 1] == pytest.approx(of_phase, abs=5e-9)
-    assert information[0, 0] == pytest.approx((1.0 / root - 1.0) / amplitude**2, rel=1e-12)
-    assert information[1, 1] == pytest.approx(1.0 - root, rel=1e-12)
+    checks.close(
+        "1 + A cos(phase): information per count, eight decimals",
+        [information[0, 0], information[1, 1]], [of_amplitude, of_phase], absolute=5e-9,
+        at=[f"F_AA, A = {amplitude:g}", f"F_phi phi, A = {amplitude:g}"],
+        source=CRAMER, kind="computed independently",
+    )  # fmt: skip
+    checks.close(
+        "1 + A cos(phase): information per count, closed form",
+        [information[0, 0], information[1, 1]],
+        [(1.0 / root - 1.0) / amplitude**2, 1.0 - root], relative=1e-12,
+        source=CRAMER, kind="computed independently",
+    )  # fmt: skip
     assert information[0, 1] == pytest.approx(0.0, abs=1e-13)
     assert information[2, 2] == pytest.approx(1.0, rel=1e-12)
 
 
-def test_weak_modulation_has_the_textbook_errors() -> None:
+def test_weak_modulation_has_the_textbook_errors(checks: Checks) -> None:
     """sigma_A -> sqrt(2/N) and sigma_phi -> sqrt(2/N)/A."""
     information = matrix(1e-3, 1e6)
-    assert information[0, 0] ** -0.5 == pytest.approx(math.sqrt(2e-6), rel=1e-6)
-    assert information[1, 1] ** -0.5 == pytest.approx(math.sqrt(2e-6) / 1e-3, rel=1e-6)
+    checks.close(
+        "weak modulation: sqrt(2/N) in amplitude, sqrt(2/N)/A in phase",
+        [information[0, 0] ** -0.5, information[1, 1] ** -0.5],
+        [math.sqrt(2e-6), math.sqrt(2e-6) / 1e-3], relative=1e-6, at=["amplitude", "phase"],
+        source="textbook limit of the same", kind="computed independently",
+    )  # fmt: skip
 
 
 @pytest.mark.parametrize("share", [0.25, 3.0])
-def test_a_known_background_dilutes_as_a_smaller_amplitude(share: float) -> None:
+def test_a_known_background_dilutes_as_a_smaller_amplitude(checks: Checks, share: float) -> None:
     """N counts of A with b N of background hold the phase as (1 + b) N counts of A/(1 + b)."""
     amplitude, counts = 0.6, 1e5
     diluted = amplitude / (1.0 + share)
     total = counts * (1.0 + share)
     information = matrix(amplitude, counts, background=share * counts)
-    assert information[1, 1] == pytest.approx(
-        total * (1.0 - math.sqrt(1.0 - diluted**2)), rel=1e-12
-    )
+    checks.close(
+        "known background: the phase information of a diluted amplitude", information[1, 1],
+        total * (1.0 - math.sqrt(1.0 - diluted**2)), relative=1e-12,
+        at=f"{share:g} background counts for each of the source's", source=CRAMER,
+        kind="computed independently",
+    )  # fmt: skip
 
 
 @pytest.mark.parametrize("sigma", [0.003, 0.05, 1.0])
-def test_schur_complement_of_one_level(sigma: float) -> None:
+def test_schur_complement_of_one_level(checks: Checks, sigma: float) -> None:
     """F_ij - G_i G_j/(sum 1/m + 1/s²), with the sums of one channel in closed form.
 
     With x = A/(1 + b) and R = sqrt(1 - x²): sum over bins of 1/m is n²/(N (1 + b) R) for n bins,
@@ -97,5 +116,10 @@ def test_schur_complement_of_one_level(sigma: float) -> None:
     of_amplitude = background * (1.0 - 1.0 / root) / amplitude
     loss = np.array([of_amplitude, 0.0, of_rate])
     expected = known - np.outer(loss, loss) / (level + sigma**-2)
-    np.testing.assert_allclose(free, expected, rtol=0, atol=1e-10 * np.abs(known).max())
+    largest = np.abs(known).max()
+    checks.close(
+        "unknown background level: Schur complement over the largest element", free / largest,
+        expected / largest, absolute=1e-10, at=f"level known to {sigma:g}",
+        source="block elimination, sums in closed form", kind="computed independently",
+    )  # fmt: skip
     assert free[1, 1] == pytest.approx(known[1, 1], rel=1e-12)
