@@ -17,6 +17,7 @@ if TYPE_CHECKING:
         read_instrument,
         read_target,
         starter_target,
+        verify,
     )
     from exptime.errors import (
         ExptimeError,
@@ -47,6 +48,7 @@ __all__ = [
     "read_instrument",
     "read_target",
     "starter_target",
+    "verify",
 ]
 
 

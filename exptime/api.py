@@ -6,68 +6,35 @@ number is refused.
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Sequence
-from typing import TYPE_CHECKING, TypeAlias
+from collections.abc import Iterable
+from functools import partial
+from typing import TYPE_CHECKING
 
 import numpy as np
 
+from exptime import given
+from exptime.documents.resume import keep_refits, read_refits
 from exptime.errors import Fault, InputError
+from exptime.given import read_instrument as read_instrument
+from exptime.given import read_target as read_target
 from exptime.instrument import reader as instrument_reader
 from exptime.instrument.records import Instrument
 from exptime.progress import Progress, silent
-from exptime.quantities import from_quantities, from_quantity
+from exptime.quantities import from_quantities
 from exptime.report.inputs import Checked, InstrumentList
 from exptime.report.results import CountsResult, ForecastResult, PulseResult
+from exptime.report.verification import VerificationResult
 from exptime.study.forecast import make_forecast
-from exptime.study.geometries import Draws
 from exptime.study.pulse import make_counts, make_pulse, with_phase_bins
-from exptime.study.records import QUANTITIES, Goal
-from exptime.target import reader as target_reader
+from exptime.study.verify import Plan, fingerprint, make_verification
 from exptime.target.records import Target
 from exptime.target.starter import render_starter
 
 if TYPE_CHECKING:
-    from astropy.units import Quantity
-
-    One: TypeAlias = Quantity | str
-    Many: TypeAlias = Quantity | str | Sequence[Quantity | str]
+    from exptime.given import Many, One
 
 DEFAULT_EXPOSURES_S = tuple(np.geomspace(1e5, 3e6, 13).tolist())
 DEFAULT_GOALS = (("radius", 0.05),)
-_LONGEST_S = 1e8
-_MOST_PHASES = 1024
-
-
-def read_target(path: str) -> Target:
-    """Read a target file.
-
-    Parameters
-    ----------
-    path : str
-        Path; ``"-"`` for standard input.
-
-    Raises
-    ------
-    InputError
-        Everything wrong with it, in one go.
-    """
-    return target_reader.read_target(str(path))
-
-
-def read_instrument(name: str) -> Instrument:
-    """Read an instrument description.
-
-    Parameters
-    ----------
-    name : str
-        Id of a shipped instrument, otherwise a path.
-
-    Raises
-    ------
-    ProfileError
-        Everything wrong with it, in one go.
-    """
-    return instrument_reader.read_instrument(str(name))
 
 
 def list_instruments() -> InstrumentList:
@@ -98,8 +65,8 @@ def check(target: Target | str, instrument: Instrument | str | None = None) -> C
     InputError
         Everything wrong with the files.
     """
-    chosen = None if instrument is None else _instrument(instrument)
-    known = _target(target)
+    chosen = None if instrument is None else given.instrument(instrument)
+    known = given.target(target)
     for measured in (*known.pulsed_fractions, *known.pulse_shapes):
         if measured.instrument is not None:
             instrument_reader.read_instrument(measured.instrument)
@@ -133,11 +100,11 @@ def pulse(
     energies_kev = from_quantities(energies, "keV", "energies")
     return PulseResult(
         make_pulse(
-            _target(target),
+            given.target(target),
             energies_kev,
-            _whole(phases, "phases", 4, _MOST_PHASES),
-            draws=_draws(draws, seed, fixed_star),
-            jobs=_whole(jobs, "jobs", 1, 1024),
+            given.whole(phases, "phases", 4, given.MOST_PHASES),
+            draws=given.draws(draws, seed, fixed_star),
+            jobs=given.whole(jobs, "jobs", 1, 1024),
             read_instrument=instrument_reader.read_instrument,
             progress=progress,
         )
@@ -171,16 +138,16 @@ def expected_counts(
     draws, seed, jobs, fixed_star, progress
         As for `forecast`; they count where the target gives no hot spots.
     """
-    chosen = _instrument(instrument)
+    chosen = given.instrument(instrument)
     if phases is not None:
-        chosen = with_phase_bins(chosen, _whole(phases, "phases", 4, _MOST_PHASES))
+        chosen = with_phase_bins(chosen, given.whole(phases, "phases", 4, given.MOST_PHASES))
     return CountsResult(
         make_counts(
-            _target(target),
+            given.target(target),
             chosen,
-            _exposures(exposure)[0],
-            draws=_draws(draws, seed, fixed_star),
-            jobs=_whole(jobs, "jobs", 1, 1024),
+            given.exposures(exposure)[0],
+            draws=given.draws(draws, seed, fixed_star),
+            jobs=given.whole(jobs, "jobs", 1, 1024),
             read_instrument=instrument_reader.read_instrument,
             progress=progress,
         )
@@ -198,6 +165,8 @@ def forecast(
     seed: int = 1,
     jobs: int = 1,
     fixed_star: bool = False,
+    verify: bool = False,
+    simulations: int = 0,
     progress: Progress = silent,
 ) -> ForecastResult:
     """Forecast the precision of mass and radius against exposure.
@@ -223,6 +192,10 @@ def forecast(
         Number of processes; changes no number.
     fixed_star : bool
         Hold a mass or radius that is not given at 1.4 Msun and 12 km instead of drawing it.
+    verify : bool
+        Test the bound at the longest exposure, as `exptime.verify` does.
+    simulations : int
+        Simulated observations that such a test refits for each of its geometries.
     progress : callable
         Called with the work done and the work in all.
 
@@ -234,65 +207,77 @@ def forecast(
     """
     if not 0.0 <= margin <= 10.0:
         raise InputError(Fault(f"{margin!r} is no margin.", "margin", "Give a share, 0 to 10."))
-    times = DEFAULT_EXPOSURES_S if exposures is None else _exposures(exposures)
+    times = DEFAULT_EXPOSURES_S if exposures is None else given.exposures(exposures)
     return ForecastResult(
         make_forecast(
-            _target(target),
-            _instrument(instrument),
+            given.target(target),
+            given.instrument(instrument),
             times,
-            tuple(_goal(*goal) for goal in goals),
+            tuple(given.goal(*goal) for goal in goals),
             margin=margin,
-            draws=_draws(draws, seed, fixed_star),
-            jobs=_whole(jobs, "jobs", 1, 1024),
+            draws=given.draws(draws, seed, fixed_star),
+            jobs=given.whole(jobs, "jobs", 1, 1024),
             read_instrument=instrument_reader.read_instrument,
+            simulations=given.simulations(simulations) if verify else None,
             progress=progress,
         )
     )
 
 
-def _target(target: Target | str) -> Target:
-    return target if isinstance(target, Target) else read_target(target)
+def verify(
+    target: Target | str,
+    instrument: Instrument | str,
+    exposure: One,
+    *,
+    simulations: int = 0,
+    draws: int = 128,
+    seed: int = 1,
+    jobs: int = 1,
+    fixed_star: bool = False,
+    resume: str | None = None,
+    progress: Progress = silent,
+) -> VerificationResult:
+    """Test the bound of a forecast: profile likelihood, other solutions, and refits.
 
+    Parameters
+    ----------
+    target : Target or str
+        A target, or the path of its file.
+    instrument : Instrument or str
+        An instrument, its id, or the path of its description.
+    exposure : Quantity or str
+        Good on-source time.
+    simulations : int
+        Simulated observations to refit for each geometry; 400 give the coverage to 2 per cent.
+    draws, seed, jobs, fixed_star
+        As for `forecast`; the seed serves the simulations too.
+    resume : str, optional
+        Path of a file that keeps the refits done so far and is taken up again by the same run.
+    progress : callable
+        Called with the work done and the work in all.
 
-def _instrument(instrument: Instrument | str) -> Instrument:
-    return instrument if isinstance(instrument, Instrument) else read_instrument(instrument)
-
-
-def _exposures(exposures: Many) -> tuple[float, ...]:
-    times = from_quantities(exposures, "s", "exposures")
-    for time in times:
-        if not 1.0 <= time <= _LONGEST_S:
-            raise InputError(
-                Fault(f"{time:g} s is no exposure.", "exposures", "Give 1 s to 1e8 s.")
-            )
-    return times
-
-
-def _draws(count: int, seed: int, is_star_fixed: bool) -> Draws:
-    return Draws(
-        count=_whole(count, "draws", 8, 100_000),
-        seed=_whole(seed, "seed", 0, 2**63 - 1),
-        is_star_fixed=bool(is_star_fixed),
+    Raises
+    ------
+    InputError
+        As `forecast`; and for a file to resume from that belongs to something else.
+    """
+    known, chosen = given.target(target), given.instrument(instrument)
+    plan = Plan(
+        exposure_s=given.exposures(exposure)[0],
+        simulations=given.simulations(simulations),
+        draws=given.draws(draws, seed, fixed_star),
     )
-
-
-def _goal(quantity: str, precision: float) -> Goal:
-    for name in QUANTITIES:
-        if name == quantity:
-            wanted = from_quantity(precision, "", "goals")
-            if not 0.0 < wanted < 1.0:
-                raise InputError(
-                    Fault(f"{wanted:g} is no precision.", "goals", "Give a share below 1.")
-                )
-            return Goal(quantity=name, precision=wanted)
-    raise InputError(
-        Fault(f"{quantity!r} cannot be a goal.", "goals", f"Valid: {', '.join(QUANTITIES)}.")
-    )
-
-
-def _whole(value: int, name: str, minimum: int, maximum: int) -> int:
-    if isinstance(value, bool) or int(value) != value or not minimum <= value <= maximum:
-        raise InputError(
-            Fault(f"{value!r} does not do.", name, f"Give a whole number, {minimum} to {maximum}.")
+    mark = fingerprint(known, chosen, plan)
+    ledger = {} if resume is None else read_refits(str(resume), mark)
+    return VerificationResult(
+        make_verification(
+            known,
+            chosen,
+            plan,
+            jobs=given.whole(jobs, "jobs", 1, 1024),
+            read_instrument=instrument_reader.read_instrument,
+            ledger=ledger,
+            keep=None if resume is None else partial(keep_refits, str(resume), mark),
+            progress=progress,
         )
-    return int(value)
+    )

@@ -11,7 +11,7 @@ ROOT = Path(__file__).resolve().parents[1]
 
 FLOORS = (
     ("cli", ("cli", "__main__", "tables")),
-    ("api", ("", "api")),
+    ("api", ("", "api", "given")),
     ("report", ("report",)),
     ("study", ("study",)),
     ("geometry", ("geometry",)),

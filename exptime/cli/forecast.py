@@ -6,6 +6,7 @@ import argparse
 from typing import Final
 
 from exptime.cli.arguments import Once, add_delivery, add_draws, add_instrument, add_target
+from exptime.cli.verify import MOST_SIMULATIONS, add_simulations
 
 DEFAULT_EXPOSURES: Final = "100ks..3Ms"
 
@@ -52,6 +53,12 @@ def add_parser(commands: argparse._SubParsersAction[argparse.ArgumentParser]) ->
         default="0 %",
         help='added to required exposures in the text, such as "15%%" (default 0)',
     )
+    parser.add_argument(
+        "--verify",
+        action="store_true",
+        help="test the bound at the longest exposure, as the command verify does",
+    )
+    add_simulations(parser, "0")
     add_draws(parser)
     add_delivery(parser, ("text", "json", "html"))
     parser.set_defaults(run=run)
@@ -73,6 +80,7 @@ def run(arguments: argparse.Namespace) -> None:
     exposures = gathering.read("--exposure", read_exposures, arguments.exposure)
     goals = [gathering.read("--goal", read_goal, goal) for goal in arguments.goal]
     margin = gathering.read("--margin", read_margin, arguments.margin)
+    simulations = gathering.read("--simulations", _read_simulations, arguments)
     draws = gathering.read("--draws", read_whole, arguments.draws, 8, 100_000)
     seed = gathering.read("--seed", read_whole, arguments.seed, 0, 2**63 - 1)
     jobs = gathering.read("--jobs", read_whole, arguments.jobs, 1, 1024)
@@ -90,6 +98,19 @@ def run(arguments: argparse.Namespace) -> None:
             seed=seed.value,
             jobs=jobs.value,
             fixed_star=arguments.fixed_star,
+            verify=arguments.verify,
+            simulations=simulations.value,
             progress=progress,
         )
     deliver(result, arguments.format, arguments.output, is_quiet=arguments.quiet)
+
+
+def _read_simulations(arguments: argparse.Namespace) -> int:
+    """Return how many observations to simulate, of which only --verify makes use."""
+    from exptime.cli.options import read_whole
+    from exptime.errors import Fault, InputError
+
+    count = read_whole(arguments.simulations, 0, MOST_SIMULATIONS)
+    if count and not arguments.verify:
+        raise InputError(Fault("simulations are refitted with --verify.", "", "Add --verify."))
+    return count

@@ -54,10 +54,10 @@ def read_exposures(text: str) -> tuple[float, ...]:
 
 
 def read_exposure(text: str) -> float:
-    """Return the single exposure that expected counts are asked for, seconds."""
+    """Return a single exposure, seconds."""
     exposures = read_exposures(text)
     if len(exposures) != 1:
-        what = f"{text!r} is {len(exposures)} exposures, expected counts are of one."
+        what = f"{text!r} is {len(exposures)} exposures; one is wanted here."
         raise InputError(Fault(what, "", "Write for example 300 ks."))
     return exposures[0]
 

@@ -6,12 +6,12 @@ import argparse
 from collections.abc import Sequence
 from typing import TYPE_CHECKING, Any, Final, NoReturn
 
-from exptime.cli import check, forecast, instruments, pulse, start
+from exptime.cli import check, forecast, instruments, pulse, start, verify
 
 if TYPE_CHECKING:
     from exptime.errors import Fault
 
-COMMANDS: Final = (start, instruments, check, pulse, forecast)
+COMMANDS: Final = (start, instruments, check, pulse, forecast, verify)
 
 _DESCRIPTION: Final = (
     "How much observing time buys which precision in the mass and radius of a neutron star: from "

@@ -2,14 +2,12 @@
 
 from __future__ import annotations
 
-import json
 import math
-from collections.abc import Sequence
 from typing import Any
 
-import numpy as np
-
-from exptime.arrays import Floats
+from exptime.report.numbers import number, numbers
+from exptime.report.numbers import to_json as to_json
+from exptime.report.proof_document import verification_summary
 from exptime.study.records import (
     Counts,
     Forecast,
@@ -24,24 +22,13 @@ from exptime.study.records import (
 Document = dict[str, Any]
 
 
-def to_json(document: Document) -> str:
-    """Return a document as text.
-
-    Raises
-    ------
-    ValueError
-        When it holds NaN or infinity, which JSON does not know.
-    """
-    return json.dumps(document, ensure_ascii=False, allow_nan=False, indent=2) + "\n"
-
-
 def forecast_document(forecast: Forecast) -> Document:
     """Return a forecast as the document ``exptime.forecast/1``.
 
     Required exposures are without the margin, which stands in a key of its own. One sigma
     everywhere; null stands for unconstrained and for not reached.
     """
-    return {
+    document: Document = {
         "schema": "exptime.forecast/1",
         "target": {"name": forecast.target.name, "file": forecast.target.file},
         "instruments": [{"id": each.id, "name": each.name} for each in forecast.instruments],
@@ -49,11 +36,11 @@ def forecast_document(forecast: Forecast) -> Document:
         "versions": dict(forecast.versions),
         "margin": forecast.margin,
         "rates": {
-            "source_per_s": _number(forecast.source_per_s),
-            "background_per_s": _number(forecast.background_per_s),
+            "source_per_s": number(forecast.source_per_s),
+            "background_per_s": number(forecast.background_per_s),
         },
         "geometry": _geometry(forecast),
-        "exposure_s": _numbers(forecast.exposures_s),
+        "exposure_s": numbers(forecast.exposures_s),
         "mass_msun": _curve(forecast.mass),
         "radius_km": _curve(forecast.radius),
         "compactness": _curve(forecast.compactness),
@@ -67,12 +54,15 @@ def forecast_document(forecast: Forecast) -> Document:
         "assumptions": list(forecast.assumptions),
         "warnings": list(forecast.warnings),
         "numerics": {
-            "resolution_change": _number(forecast.numerics.resolution_change),
-            "condition": _number(forecast.numerics.condition),
-            "quantile_error": _number(forecast.numerics.quantile_error),
-            "floored_share": _number(forecast.numerics.floored_share),
+            "resolution_change": number(forecast.numerics.resolution_change),
+            "condition": number(forecast.numerics.condition),
+            "quantile_error": number(forecast.numerics.quantile_error),
+            "floored_share": number(forecast.numerics.floored_share),
         },
     }
+    if forecast.verification is not None:
+        document["verification"] = verification_summary(forecast.verification)
+    return document
 
 
 def pulse_document(pulse: Pulse) -> Document:
@@ -80,9 +70,9 @@ def pulse_document(pulse: Pulse) -> Document:
     return {
         "schema": "exptime.pulse/1",
         "target": {"name": pulse.target},
-        "phase": _numbers(pulse.phase),
-        "energy_kev": _numbers(pulse.energies_kev),
-        "photon_flux": _numbers(pulse.photon_flux),
+        "phase": numbers(pulse.phase),
+        "energy_kev": numbers(pulse.energies_kev),
+        "photon_flux": numbers(pulse.photon_flux),
         "notes": list(pulse.notes),
     }
 
@@ -93,11 +83,11 @@ def counts_document(counts: Counts) -> Document:
         "schema": "exptime.counts/1",
         "target": {"name": counts.target},
         "instrument": {"name": counts.instrument},
-        "exposure_s": _number(counts.exposure_s),
-        "phase": _numbers(counts.phase),
-        "channel_kev": _numbers(counts.channel_edges_kev),
-        "source_counts": _numbers(counts.source_counts),
-        "background_counts": _numbers(counts.background_counts),
+        "exposure_s": number(counts.exposure_s),
+        "phase": numbers(counts.phase),
+        "channel_kev": numbers(counts.channel_edges_kev),
+        "source_counts": numbers(counts.source_counts),
+        "background_counts": numbers(counts.background_counts),
         "notes": list(counts.notes),
     }
 
@@ -108,7 +98,7 @@ def _geometry(forecast: Forecast) -> Document:
         "known": forecast.is_geometry_known,
         "draws": len(forecast.geometries),
         "candidates": forecast.candidates,
-        "effective_geometries": _number(forecast.effective_geometries),
+        "effective_geometries": number(forecast.effective_geometries),
         "hidden_spots": forecast.hidden_spots,
         "pulsed_fraction": fractions[0] if fractions else None,
         "further_pulsed_fractions": fractions[1:],
@@ -120,24 +110,24 @@ def _fraction(fraction: ReachedFraction) -> Document:
     reached = fraction.reached
     return {
         "label": fraction.label,
-        "asked": _number(fraction.asked),
-        "uncertainty": _number(fraction.uncertainty),
-        "reached": [_number(each) for each in (reached.p16, reached.p50, reached.p84)],
+        "asked": number(fraction.asked),
+        "uncertainty": number(fraction.uncertainty),
+        "reached": [number(each) for each in (reached.p16, reached.p50, reached.p84)],
     }
 
 
 def _star_and_spots(geometry: GeometryResult) -> Document:
     star = geometry.star
     return {
-        "mass_msun": _number(star.mass_msun),
-        "radius_km": _number(star.radius_km),
+        "mass_msun": number(star.mass_msun),
+        "radius_km": number(star.radius_km),
         "inclination_deg": math.degrees(math.acos(min(1.0, max(-1.0, star.cos_inclination)))),
         "spots": [
             {
                 "colatitude_deg": math.degrees(spot.colatitude),
                 "longitude_deg": math.degrees(spot.longitude),
                 "angular_radius_deg": math.degrees(spot.angular_radius),
-                "temperature_kev": _number(spot.temperature_kev),
+                "temperature_kev": number(spot.temperature_kev),
             }
             for spot in geometry.spots
         ],
@@ -146,10 +136,10 @@ def _star_and_spots(geometry: GeometryResult) -> Document:
 
 def _curve(curve: QuantityCurve) -> Document:
     return {
-        "fiducial": _number(curve.fiducial),
+        "fiducial": number(curve.fiducial),
         "sigma": _spread(curve.sigma),
         "data_sigma": _spread(curve.data_sigma),
-        "prior_sigma": _number(curve.prior_sigma),
+        "prior_sigma": number(curve.prior_sigma),
     }
 
 
@@ -165,23 +155,10 @@ def _goal(result: GoalResult) -> Document:
 
 def _spread(spread: Spread) -> Document:
     return {
-        "p16": _numbers(spread.p16),
-        "p50": _numbers(spread.p50),
-        "p84": _numbers(spread.p84),
+        "p16": numbers(spread.p16),
+        "p50": numbers(spread.p50),
+        "p84": numbers(spread.p84),
     }
-
-
-def _numbers(values: Floats | Sequence[float] | float) -> Any:
-    """Return an array of any shape as nested lists of numbers and nulls."""
-    array = np.asarray(values, float)
-    if array.ndim == 0:
-        return _number(float(array))
-    return [_numbers(row) for row in array] if array.ndim > 1 else [_number(x) for x in array]
-
-
-def _number(value: float | Floats) -> float | None:
-    plain = float(value)
-    return plain if math.isfinite(plain) else None
 
 
 def _fraction_of_one(value: float) -> float:

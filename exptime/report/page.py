@@ -11,6 +11,14 @@ from exptime.report.drawing import Picture
 from exptime.report.ellipses import ellipse_picture
 from exptime.report.feasibility import feasibility
 from exptime.report.figures import precision_picture, share_picture
+from exptime.report.proof import (
+    procedure,
+    profile_tables,
+    reasons,
+    refits_table,
+    verdict_sentence,
+)
+from exptime.report.proof_figure import profile_picture
 from exptime.report.sentences import CAUTION, answers, notes_on_goals
 from exptime.report.tables import (
     fixed_quantities,
@@ -49,12 +57,12 @@ def forecast_page(forecast: Forecast) -> str:
     }
     context: dict[str, Any] = {
         **_summary(forecast),
-        "figures": {name: _drawn(figure) for name, figure in figures.items()},
+        "figures": {name: drawn(figure) for name, figure in figures.items()},
         "precision_tables": precision_tables(forecast),
         "shares_table": None if forecast.is_geometry_known else shares_table(forecast),
-        "notes": _plain([*fixed_quantities(forecast), *notes_on_goals(forecast)]),
+        "notes": plain([*fixed_quantities(forecast), *notes_on_goals(forecast)]),
         "reading": reading(forecast),
-        "assumptions": _plain(forecast.assumptions),
+        "assumptions": plain(forecast.assumptions),
         "geometry_facts": geometry_facts(forecast),
         "rate_facts": rate_facts(forecast),
         "limits": limits(forecast),
@@ -66,9 +74,10 @@ def forecast_page(forecast: Forecast) -> str:
         ],
         "run_facts": run_facts(forecast),
         "feasibility": feasibility(forecast),
+        "verification": _verification(forecast),
         "caution": CAUTION,
     }
-    return _environment().get_template("forecast.html").render(context)
+    return environment().get_template("forecast.html").render(context)
 
 
 def forecast_html_fragment(forecast: Forecast) -> str:
@@ -81,10 +90,10 @@ def forecast_html_fragment(forecast: Forecast) -> str:
     """
     context: dict[str, Any] = {
         **_summary(forecast),
-        "figure_content": _drawn(precision_picture(forecast)),
+        "figure_content": drawn(precision_picture(forecast)),
         "caution": CAUTION,
     }
-    return _environment().get_template("forecast_fragment.html").render(context)
+    return environment().get_template("forecast_fragment.html").render(context)
 
 
 def _summary(forecast: Forecast) -> dict[str, Any]:
@@ -97,13 +106,28 @@ def _summary(forecast: Forecast) -> dict[str, Any]:
         "instruments": [printable(each.name) for each in forecast.instruments],
         "answer": first,
         "other_answers": others,
-        "warnings": _plain(forecast.warnings),
+        "warnings": plain(forecast.warnings),
         "key_facts": key_facts(forecast),
         "goals_table": goals_table(forecast),
     }
 
 
-def _drawn(figure: Picture | None) -> dict[str, Any] | None:
+def _verification(forecast: Forecast) -> dict[str, Any] | None:
+    found = forecast.verification
+    if found is None:
+        return None
+    tables = [table for each in found.geometries for table in profile_tables(each)[:1]]
+    refits = [table for each in found.geometries if (table := refits_table(each)) is not None]
+    return {
+        "verdict": verdict_sentence(found),
+        "reasons": plain(reasons(found)),
+        "figure": drawn(profile_picture(found)),
+        "tables": [*tables, *refits],
+        "procedure": procedure(found),
+    }
+
+
+def drawn(figure: Picture | None) -> dict[str, Any] | None:
     """Return a figure for a template; its svg is our own and not escaped again."""
     from markupsafe import Markup
 
@@ -113,11 +137,13 @@ def _drawn(figure: Picture | None) -> dict[str, Any] | None:
     return {"name": figure.name, "svg": svg, "caption": figure.caption}
 
 
-def _plain(sentences: tuple[str, ...] | list[str]) -> list[str]:
+def plain(sentences: tuple[str, ...] | list[str]) -> list[str]:
+    """Return sentences without characters that steer what shows them."""
     return [printable(sentence) for sentence in sentences]
 
 
-def _environment() -> Environment:
+def environment() -> Environment:
+    """Return what renders the templates that ship."""
     from jinja2 import Environment, FunctionLoader, StrictUndefined
 
     folder = shipped_folder("templates")

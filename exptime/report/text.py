@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING
 from exptime.report.background import limits, method
 from exptime.report.digits import duration, significant
 from exptime.report.feasibility import feasibility
+from exptime.report.proof_text import verdict_parts
 from exptime.report.sentences import CAUTION, answers, notes_on_goals
 from exptime.report.tables import (
     Table,
@@ -47,6 +48,8 @@ def forecast_text(forecast: Forecast, width: int = 80) -> str:
         *listed("Warnings", forecast.warnings),
         *grid(goals_table(forecast)),
     ]
+    if forecast.verification is not None:
+        parts += verdict_parts(forecast.verification)
     for table in precision_tables(forecast):
         parts += grid(table)
     parts += paragraphs([*fixed_quantities(forecast), *notes_on_goals(forecast), reading(forecast)])

@@ -9,6 +9,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from exptime.arrays import Booleans, Floats
+from exptime.geometry.resampling import weighted_quantiles
 from exptime.information.matrix import (
     BackgroundLevels,
     background_levels,
@@ -177,6 +178,20 @@ def answer(
         hidden_spots=sum(linearised.is_hidden),
         floored_share=linearised.floored_share,
     )
+
+
+def index_at(cases: Sequence[Case], weights: Floats, share: float) -> int:
+    """Index of the geometry whose data_sigma(radius) is nearest a weighted quantile.
+
+    Taken at the longest exposure; where the quantile is infinite, the widest finite one, or else
+    the heaviest geometry.
+    """
+    sigma = np.array([case.data_sigma[-1, 1] for case in cases])
+    center = float(weighted_quantiles(sigma, weights, np.array([share]))[0])
+    if np.isfinite(center):
+        return int(np.argmin(np.abs(sigma - center)))
+    finite = np.where(np.isfinite(sigma), sigma, -1.0)
+    return int(np.argmax(finite if finite.max() >= 0.0 else weights))
 
 
 def experiment_of(question: Question, star: Star, linearised: Linearised) -> Experiment:

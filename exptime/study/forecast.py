@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 from functools import partial
 
 import numpy as np
@@ -15,7 +16,15 @@ from exptime.interstellar.absorption import load_absorption
 from exptime.observation.instrument_response import instrument_response
 from exptime.parallel import workers
 from exptime.progress import Progress, silent
-from exptime.study.case import Case, Geometry, Question, answer, correlation, resolutions_for
+from exptime.study.case import (
+    Case,
+    Geometry,
+    Question,
+    answer,
+    correlation,
+    index_at,
+    resolutions_for,
+)
 from exptime.study.geometries import Draws, GeometrySet, InstrumentReader, geometries_of
 from exptime.study.records import (
     ExpectedData,
@@ -29,6 +38,7 @@ from exptime.study.records import (
     Spread,
 )
 from exptime.study.statements import assumptions_of, warnings_of
+from exptime.study.verify import PARTS, Plan, last_parts, part_of, verify_cases
 from exptime.study.versions import versions
 from exptime.target.records import Target
 
@@ -45,6 +55,7 @@ def make_forecast(
     draws: Draws | None = None,
     jobs: int = 1,
     read_instrument: InstrumentReader,
+    simulations: int | None = None,
     progress: Progress = silent,
 ) -> Forecast:
     """Forecast a target with an instrument.
@@ -67,8 +78,11 @@ def make_forecast(
         Number of processes; changes no number.
     read_instrument : callable
         Reads the instruments that the target's measurements name.
+    simulations : int, optional
+        Verify the forecast at the longest exposure, with so many simulated observations (none
+        is allowed); not verified when not given.
     progress : Progress
-        Told how far the work has come, of twice the number of draws.
+        Told how far the work has come.
 
     Returns
     -------
@@ -92,31 +106,23 @@ def make_forecast(
         goals=tuple(goals),
     )
     with workers(jobs) as team:
-        searching = partial(_part_of, progress, 0, how.count)
+        parts = 2 if simulations is None else PARTS
+        searching = partial(part_of, progress, 0, parts)
         geometries = geometries_of(target, how, absorption, read_instrument, team, searching)
-        computing = partial(_part_of, progress, how.count, how.count)
+        computing = partial(part_of, progress, 1, parts)
         cases = team.map(partial(answer, question), geometries.geometries, computing)
-        median = median_index(cases, geometries.weights)
+        median = index_at(cases, geometries.weights, 0.5)
         change = resolution_change(question, geometries.geometries[median], cases[median])
-    return _collect(question, how, margin, geometries, cases, median, change)
-
-
-def _part_of(progress: Progress, start: int, share: int, done: int, total: int) -> None:
-    progress(start + (share * done) // max(total, 1), 2 * share)
-
-
-def median_index(cases: Sequence[Case], weights: Floats) -> int:
-    """Index of the median geometry: data_sigma(radius) nearest the weighted median.
-
-    Taken at the longest exposure; where the median is infinite, the widest finite one, or else
-    the heaviest geometry.
-    """
-    sigma = np.array([case.data_sigma[-1, 1] for case in cases])
-    center = float(weighted_quantiles(sigma, weights, np.array([0.5]))[0])
-    if np.isfinite(center):
-        return int(np.argmin(np.abs(sigma - center)))
-    finite = np.where(np.isfinite(sigma), sigma, -1.0)
-    return int(np.argmax(finite if finite.max() >= 0.0 else weights))
+        verification = None
+        if simulations is not None:
+            plan = Plan(
+                exposure_s=float(question.exposures_s[-1]), simulations=simulations, draws=how
+            )
+            verification = verify_cases(
+                question, plan, geometries, cases, team, progress=partial(last_parts, progress)
+            )
+    forecast = _collect(question, how, margin, geometries, cases, median, change)
+    return replace(forecast, verification=verification)
 
 
 def resolution_change(question: Question, geometry: Geometry, case: Case) -> float:

@@ -170,6 +170,10 @@ def constraint_at(setting: Setting, quantity: Quantity, value: float) -> Constra
     identity = np.eye(len(names))
     origin = np.where(free, 0.0, setting.truth)
     mass, radius = names.index("mass"), names.index("radius")
+    if quantity == "compactness" and not free[radius]:
+        return constraint_at(setting, "mass", value * setting.truth[radius] / SOLAR_MASS_KM)
+    if quantity == "compactness" and not free[mass]:
+        return constraint_at(setting, "radius", SOLAR_MASS_KM * setting.truth[mass] / value)
     if quantity == "compactness":
         # R = GM/(c² C): the pair moves together on a straight line through zero.
         pair = identity[mass] + SOLAR_MASS_KM / value * identity[radius]

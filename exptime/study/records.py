@@ -9,6 +9,7 @@ from exptime.information.precision import QUANTITIES as QUANTITIES
 from exptime.information.precision import Quantity as QuantityName
 from exptime.instrument.records import Instrument
 from exptime.star.records import HotSpot, Star
+from exptime.study.verify_records import Verification
 from exptime.target.records import Target
 
 
@@ -228,6 +229,8 @@ class Forecast:
         Package name to version, exptime first.
     assumptions, warnings : tuple of str
         Sentences for every report.
+    verification : Verification or None
+        The check of the bound, where one was asked for.
     """
 
     target: Target
@@ -255,6 +258,7 @@ class Forecast:
     versions: dict[str, str] = field(default_factory=dict)
     assumptions: tuple[str, ...] = ()
     warnings: tuple[str, ...] = ()
+    verification: Verification | None = None
 
     def curve(self, quantity: QuantityName) -> QuantityCurve:
         """Return the curve of the quantity named."""

@@ -11,6 +11,9 @@ from exptime.study.verify_records import Hump, Scatter, Simulations, Verdict
 _TOLERATED = 0.15
 _MANY_ELSEWHERE = 0.05
 _SIGMAS = 3.0
+_GRAVEST_FIRST: tuple[Verdict, ...] = (
+    *("multimodal", "optimistic", "prior-limited", "pessimistic", "holds"),
+)
 
 
 def verdict_of(
@@ -19,18 +22,18 @@ def verdict_of(
     simulations: Simulations | None,
     is_prior_limited: bool,
 ) -> tuple[Verdict, str]:
-    """Judge the bound on the radius.
+    """Judge the bound on the radius, or on the mass where the radius is held fixed.
 
     Parameters
     ----------
     profiles : sequence of Profile
-        With Gaussian-counted priors; one is of the radius.
+        With Gaussian-counted priors; the first is judged.
     humps : sequence of Hump
         Other maxima that the data allow.
     simulations : Simulations or None
         Refits, if there were any.
     is_prior_limited : bool
-        Whether the radius is prior-limited.
+        Whether that quantity is prior-limited.
 
     Returns
     -------
@@ -42,13 +45,13 @@ def verdict_of(
     A bound holds when profile and scatter agree with it to 15 per cent, or, for the scatter and
     coverage of few refits, to three of their own standard errors.
     """
-    profile = next(profile for profile in profiles if profile.quantity == "radius")
+    profile = profiles[0]
     if is_prior_limited:
         return "prior-limited", (
-            "The radius is prior-limited: what was known beforehand says more than the data, and "
-            "the bound is no measurement."
+            f"The {profile.quantity} is prior-limited: what was known beforehand says more than "
+            "the data, and the bound is no measurement."
         )
-    away = [hump for hump in humps if abs(hump.radius_km - profile.truth) > profile.bound]
+    away = [hump for hump in humps if abs(_value(hump, profile) - profile.truth) > profile.bound]
     if away:
         hump = away[0]
         return "multimodal", (
@@ -63,7 +66,7 @@ def verdict_of(
                 f"{100 * share:.0f} per cent of {simulations.converged} refits ended at another "
                 "solution: the bound sees only one of them."
             )
-    scatter = _of_radius(simulations)
+    scatter = _scatter_of(profile, simulations)
     ratios = [("the profile likelihood", profile.ratio, _TOLERATED)]
     if scatter is not None and simulations is not None:
         allowed = max(_TOLERATED, _SIGMAS / math.sqrt(2.0 * simulations.converged))
@@ -82,7 +85,16 @@ def verdict_of(
     ) + "."
 
 
-def _of_radius(simulations: Simulations | None) -> Scatter | None:
+def overall(words: Sequence[Verdict]) -> Verdict:
+    """Return the verdict over several geometries: the gravest of theirs."""
+    return next(word for word in _GRAVEST_FIRST if word in words)
+
+
+def _value(hump: Hump, profile: Profile) -> float:
+    return hump.mass_msun if profile.quantity == "mass" else hump.radius_km
+
+
+def _scatter_of(profile: Profile, simulations: Simulations | None) -> Scatter | None:
     if simulations is None:
         return None
-    return next((item for item in simulations.scatter if item.quantity == "radius"), None)
+    return next((item for item in simulations.scatter if item.quantity == profile.quantity), None)

@@ -2,9 +2,7 @@
 
 from __future__ import annotations
 
-import hashlib
 import math
-import pickle
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass, field, replace
 from functools import partial
@@ -12,7 +10,7 @@ from functools import partial
 import numpy as np
 
 from exptime.arrays import Floats
-from exptime.geometry.resampling import weighted_quantiles
+from exptime.errors import Fault, InputError
 from exptime.information.model import Bounds
 from exptime.information.precision import QUANTITIES, Experiment, Quantity
 from exptime.instrument.records import Instrument
@@ -20,7 +18,8 @@ from exptime.interstellar.absorption import load_absorption
 from exptime.observation.instrument_response import instrument_response
 from exptime.parallel import Workers, workers
 from exptime.progress import Progress, silent
-from exptime.study.case import Case, Question, answer
+from exptime.study.case import Case, Question, answer, index_at
+from exptime.study.fingerprint import digest_of
 from exptime.study.geometries import Draws, GeometrySet, InstrumentReader, geometries_of
 from exptime.study.humps import climb, distinct_humps, hump_starts
 from exptime.study.profile import Profile, Setting, profile_of, ridge_direction
@@ -37,8 +36,14 @@ Ledger = dict[str, list[float]]
 Keep = Callable[[Ledger], None]
 
 _PROFILED: tuple[Quantity, ...] = ("radius", "mass", "compactness")
-_POINTS = {"16 per cent point": 0.16, "median": 0.5, "84 per cent point": 0.84}
+_POINTS = {
+    "the median geometry": 0.5,
+    "the 16 per cent geometry": 0.16,
+    "the 84 per cent geometry": 0.84,
+}
 _BLOCK = 16
+PARTS = 8
+"""Shares of the progress: search, forecast, and six for the verification."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -105,16 +110,54 @@ def make_verification(
         exposures_s=np.array([plan.exposure_s]),
         goals=(),
     )
-    done: Ledger = {} if ledger is None else ledger
     with workers(jobs) as team:
-        geometries = geometries_of(target, plan.draws, absorption, read_instrument, team)
-        cases = team.map(partial(answer, question), geometries.geometries)
-        chosen = _chosen(geometries, cases)
-        checked = [
-            _check(question, plan, label, geometries, index, cases[index], team, done, keep,
-                   partial(_shifted, progress, number, len(chosen)))
-            for number, (label, index) in enumerate(chosen)
-        ]  # fmt: skip
+        searching = partial(part_of, progress, 0, PARTS)
+        geometries = geometries_of(target, plan.draws, absorption, read_instrument, team, searching)
+        computing = partial(part_of, progress, 1, PARTS)
+        cases = team.map(partial(answer, question), geometries.geometries, computing)
+        return verify_cases(
+            question, plan, geometries, cases, team, ledger, keep,
+            partial(last_parts, progress),
+        )  # fmt: skip
+
+
+def verify_cases(
+    question: Question,
+    plan: Plan,
+    geometries: GeometrySet,
+    cases: Sequence[Case],
+    team: Workers,
+    ledger: Ledger | None = None,
+    keep: Keep | None = None,
+    progress: Progress = silent,
+) -> Verification:
+    """Verify a forecast that is made already, at the longest of its exposures.
+
+    Parameters
+    ----------
+    question, geometries, cases
+        What was asked, of which geometries, and the answers.
+    plan, ledger, keep, progress
+        As for `make_verification`; the exposure of the plan is the last of the question.
+    team : Workers
+        Processes.
+
+    Raises
+    ------
+    InputError
+        When mass and radius are both held fixed.
+    """
+    target, instrument = question.target, question.instrument
+    if not np.any(cases[0].prior_sigma > 0.0):
+        what = "mass and radius are both held fixed: there is no precision to verify."
+        raise InputError(Fault(what, target.file, "Give one of them an uncertainty above 0."))
+    done: Ledger = {} if ledger is None else ledger
+    chosen = _chosen(geometries, cases)
+    checked = [
+        _check(question, plan, label, geometries, index, cases[index], team, done, keep,
+               partial(part_of, progress, number, len(chosen)))
+        for number, (label, index) in enumerate(chosen)
+    ]  # fmt: skip
     return Verification(
         target=target.name,
         file=target.file,
@@ -129,12 +172,18 @@ def make_verification(
 
 def fingerprint(target: Target, instrument: Instrument, plan: Plan) -> str:
     """Return a text that differs whenever refits kept before must not be used again."""
-    content = pickle.dumps((target.entries, instrument, plan.exposure_s, plan.draws))
-    return hashlib.sha256(content).hexdigest()[:32]
+    known = replace(target, file="", entries=())
+    return digest_of(known, instrument, plan.exposure_s, plan.draws, versions())
 
 
-def _shifted(progress: Progress, number: int, count: int, done: int, total: int) -> None:
+def part_of(progress: Progress, number: int, count: int, done: int, total: int) -> None:
+    """Tell the progress of one of several equal parts as that of the whole."""
     progress(number * total + done, count * total)
+
+
+def last_parts(progress: Progress, done: int, total: int) -> None:
+    """Tell the progress of a verification as that of the whole."""
+    progress(2 * total + (PARTS - 2) * done, PARTS * total)
 
 
 def _counted(progress: Progress, before: int, total: int, done: int, _: int) -> None:
@@ -145,15 +194,9 @@ def _chosen(geometries: GeometrySet, cases: Sequence[Case]) -> list[tuple[str, i
     """Return labels and indices of the geometries to verify."""
     if geometries.is_known:
         return [("the geometry given", 0)]
-    sigma = np.array([case.data_sigma[0, 1] for case in cases])
-    points = weighted_quantiles(sigma, geometries.weights, np.array(list(_POINTS.values())))
-    finite = np.where(np.isfinite(sigma), sigma, np.inf)
     found: dict[int, str] = {}
-    for label, point in zip(_POINTS, points, strict=True):
-        with np.errstate(invalid="ignore"):
-            distance = np.abs(finite - point)
-        index = int(np.nanargmin(np.where(np.isnan(distance), np.inf, distance)))
-        found.setdefault(index, label)
+    for label, share in _POINTS.items():
+        found.setdefault(index_at(cases, geometries.weights, share), label)
     return [(label, index) for index, label in found.items()]
 
 
@@ -176,7 +219,9 @@ def _check(
         (replace(setting, bounds=bounds), quantity, experiment, covariance)
         for bounds in (None, limits)
         for quantity in _PROFILED
+        if _sigma(experiment, covariance, quantity) > 0.0
     ]
+    kinds = len(tasks) // 2
     total = len(tasks) + plan.simulations
     profiles = team.map(_profile, tasks, lambda done, _: progress(done, total), fewest=2)
     starts = hump_starts(setting, geometries, index)
@@ -188,14 +233,14 @@ def _check(
             plan, label, setting, experiment, covariance, limits, team, ledger, keep,
             lambda done, _: progress(len(tasks) + done, total),
         )  # fmt: skip
-    is_prior_limited = bool(case.is_prior_limited[0, 1])
-    word, reason = verdict_of(profiles[:3], humps, simulations, is_prior_limited)
+    is_prior_limited = bool(case.is_prior_limited[-1, QUANTITIES.index(tasks[0][1])])
+    word, reason = verdict_of(profiles[:kinds], humps, simulations, is_prior_limited)
     return CheckedGeometry(
         label=label,
         star=geometry[0],
         spots=geometry[1],
-        profiles=tuple(profiles[:3]),
-        bounded_profiles=tuple(profiles[3:]),
+        profiles=tuple(profiles[:kinds]),
+        bounded_profiles=tuple(profiles[kinds:]),
         humps=tuple(humps),
         simulations=simulations,
         is_prior_limited=is_prior_limited,
@@ -209,9 +254,13 @@ _Task = tuple[Setting, Quantity, Experiment, Floats]
 
 def _profile(task: _Task) -> Profile:
     setting, quantity, experiment, covariance = task
-    row = experiment.directions()[QUANTITIES.index(quantity)]
-    bound = math.sqrt(max(float(row @ covariance @ row), 0.0))
+    bound = _sigma(experiment, covariance, quantity)
     return profile_of(setting, quantity, bound, ridge_direction(experiment, covariance, quantity))
+
+
+def _sigma(experiment: Experiment, covariance: Floats, quantity: Quantity) -> float:
+    row = experiment.directions()[QUANTITIES.index(quantity)]
+    return math.sqrt(max(float(row @ covariance @ row), 0.0))
 
 
 def _simulate(
@@ -245,7 +294,5 @@ def _simulate(
     for number in range(plan.simulations):
         flag, *values = ledger[f"{label}:{number}"]
         refits.append((bool(flag), np.array(values)))
-    bounds = np.sqrt(
-        np.maximum(np.diagonal(experiment.directions() @ covariance @ experiment.directions().T), 0)
-    )
+    bounds = np.array([_sigma(experiment, covariance, quantity) for quantity in QUANTITIES])
     return summarise(observer, refits, bounds)
