@@ -7,18 +7,18 @@ on the fiducial redshift interval, so that one folded spectrum serves them all.
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
 
-from exptime.arrays import Booleans, Complexes, Floats
+from exptime.arrays import Complexes, Floats
 from exptime.constants import PARSEC_KM
-from exptime.observation.fold import FoldedSpectrum, fold_spectrum
+from exptime.observation.fold import fold_spectrum
 from exptime.observation.rates import observed_waves, real_product
 from exptime.observation.response import Response
 from exptime.observation.scene import Scene
-from exptime.star.moments import Interval, spot_moments, widened
+from exptime.star.moments import Interval, joint_moments, spot_moments, widened
 from exptime.star.pulse import longitude_factor
 from exptime.star.records import HotSpot, Star
 from exptime.star.resolution import Resolution
@@ -111,30 +111,31 @@ def linearise(
         Half-widths of the differences.
     """
     widths = steps or Steps()
-    pairs = _neighbouring_views(scene.star, widths)
-    view = view_of(scene.star)
     names = parameter_names(len(scene.spots))
     shape = (phase_bins, response.matrix.shape[1])
     source, derivatives, hidden = np.zeros(shape), np.zeros((len(names), *shape)), []
+    intervals = _redshift_intervals(scene, resolutions)
+    changes = _moments_and_changes(scene, resolutions, intervals, widths)
     for index, (spot, resolution) in enumerate(zip(scene.spots, resolutions, strict=True)):
         waves = observed_waves(response, scene.star.spin_hz, resolution.harmonics, phase_bins)
-        part = _spot_part(scene, view, pairs, spot, resolution, response, widths)
-        first = len(STAR_PARAMETERS) + index * len(SPOT_PARAMETERS)
-        rates = {name: real_product(waves, term[0]) @ term[1] for name, term in part.items()}
+        terms = _terms(scene, response, spot, resolution, intervals[index], changes[index])
+        rates = {name: real_product(waves, term[0]) @ term[1] for name, term in terms.items()}
         source += rates.pop("rate")
+        first = len(STAR_PARAMETERS) + index * len(SPOT_PARAMETERS)
         for name in SPOT_PARAMETERS:
             derivatives[first + SPOT_PARAMETERS.index(name)] = rates.pop(name)
         for name, values in rates.items():
             derivatives[names.index(name)] += values
-        hidden.append(not np.any(part["rate"][0]))
+        hidden.append(not np.any(changes[index]["rate"]))
     dilution = (scene.distance_pc * PARSEC_KM) ** -2
     source *= dilution
     derivatives *= dilution
     derivatives[names.index("distance")] = -2.0 / scene.distance_pc * source
-    low = _is_negligible(source)
+    peak = source.max(axis=0)
+    low = (source < _FLOOR * peak) & (peak > 0.0)
     derivatives[:, low] = 0.0
     return Linearised(
-        source_per_s=np.where(low, _FLOOR * np.maximum(source.max(axis=0), 0.0), source),
+        source_per_s=np.where(low, _FLOOR * np.maximum(peak, 0.0), source),
         names=names,
         derivatives=derivatives,
         is_hidden=tuple(hidden),
@@ -142,79 +143,128 @@ def linearise(
     )
 
 
-def _is_negligible(source: Floats) -> Booleans:
-    """Cells below the floor of a channel that has a source at all."""
-    peak = source.max(axis=0)
-    return np.asarray((source < _FLOOR * peak) & (peak > 0.0))
+def _redshift_intervals(scene: Scene, resolutions: Sequence[Resolution]) -> list[Interval]:
+    """Return an interval of the redshift factor for each spot; one for all that share counts."""
+    view = view_of(scene.star)
+    rough = [
+        spot_moments(view, scene.emission, spot, replace(resolution, harmonics=0, redshift_terms=1))
+        for spot, resolution in zip(scene.spots, resolutions, strict=True)
+    ]
+    intervals = [moments.redshift_range for moments in rough]
+    visible = [moments.redshift_range for moments in rough if not moments.is_hidden]
+    if len(set(resolutions)) == 1 and visible:
+        lows, highs = zip(*visible, strict=True)
+        intervals = [(min(lows), max(highs))] * len(rough)
+    return [widened(interval, _RANGE_MARGIN) for interval in intervals]
+
+
+def _moments_and_changes(
+    scene: Scene,
+    resolutions: Sequence[Resolution],
+    intervals: Sequence[Interval],
+    steps: Steps,
+) -> list[dict[str, Complexes]]:
+    """Return for each spot its moments ("rate") and their derivatives by central differences."""
+    varied = [_variants(spot, steps) for spot in scene.spots]
+    count = len(varied[0])
+    at_home = _moments(
+        scene,
+        view_of(scene.star),
+        [spot for variants in varied for spot in variants],
+        [resolution for resolution in resolutions for _ in range(count)],
+        [interval for interval in intervals for _ in range(count)],
+    )
+    results = []
+    for index, spot in enumerate(scene.spots):
+        own, north, south, wider, narrower = at_home[index * count : (index + 1) * count]
+        width = 2.0 * steps.angular_radius * spot.angular_radius
+        turned = _carried(spot, steps.colatitude, south) - _carried(spot, -steps.colatitude, north)
+        results.append(
+            {
+                "rate": own,
+                "colatitude": turned / (2.0 * steps.colatitude),
+                "angular_radius": (wider - narrower) / width,
+            }
+        )
+    for name, (lower, upper, width) in _neighbouring_views(scene.star, steps).items():
+        below = _moments(scene, lower, scene.spots, resolutions, intervals)
+        above = _moments(scene, upper, scene.spots, resolutions, intervals)
+        for result, low, high in zip(results, below, above, strict=True):
+            result[name] = (high - low) / width
+    return results
+
+
+def _moments(
+    scene: Scene,
+    view: View,
+    spots: Sequence[HotSpot],
+    resolutions: Sequence[Resolution],
+    intervals: Sequence[Interval],
+) -> list[Complexes]:
+    """Return the moments of spots, those of equal resolution and interval in one go."""
+    found: list[Complexes] = []
+    settings = list(zip(resolutions, intervals, strict=True))
+    while len(found) < len(spots):
+        first = len(found)
+        last = first + 1
+        while last < len(spots) and settings[last] == settings[first]:
+            last += 1
+        resolution, interval = settings[first]
+        group = joint_moments(view, scene.emission, spots[first:last], resolution, interval)
+        found += [moments.values for moments in group]
+    return found
+
+
+def _variants(spot: HotSpot, steps: Steps) -> list[HotSpot]:
+    """Return a spot with its neighbours to north and south, wider and narrower."""
+    width = steps.angular_radius * spot.angular_radius
+    moved = [_folded(spot.colatitude + sign * steps.colatitude) for sign in (-1.0, 1.0)]
+    return [
+        spot,
+        *(replace(spot, colatitude=colatitude) for colatitude in moved),
+        replace(spot, angular_radius=spot.angular_radius + width),
+        replace(spot, angular_radius=spot.angular_radius - width),
+    ]
+
+
+def _folded(colatitude: float) -> float:
+    """Colatitude of a centre that may have been carried over a pole."""
+    if 0.0 <= colatitude <= np.pi:
+        return colatitude
+    return float(np.pi - abs(np.pi - abs(colatitude)))
+
+
+def _carried(spot: HotSpot, step: float, moments: Complexes) -> Complexes:
+    """Moments of a moved spot; one carried over a pole comes down on the other side."""
+    if 0.0 <= spot.colatitude + step <= np.pi:
+        return moments
+    return np.asarray(moments * longitude_factor(np.pi, len(moments) - 1)[:, None])
 
 
 _Term = tuple[Complexes, Floats]
 
 
-def _spot_part(
+def _terms(
     scene: Scene,
-    view: View,
-    pairs: dict[str, tuple[View, View, float]],
+    response: Response,
     spot: HotSpot,
     resolution: Resolution,
-    response: Response,
-    steps: Steps,
+    interval: Interval,
+    changes: dict[str, Complexes],
 ) -> dict[str, _Term]:
     """Return (harmonics of moments, folded spectrum) of the rate and of each derivative."""
-    start = spot_moments(view, scene.emission, spot, resolution)
-    interval = widened(start.redshift_range, _RANGE_MARGIN)
-
-    def moments(view: View, spot: HotSpot) -> Complexes:
-        return spot_moments(view, scene.emission, spot, resolution, interval).values
-
-    folded = _fold(scene, response, spot, interval, resolution)
-    phase = longitude_factor(spot.longitude, resolution.harmonics)[:, None]
-    here = moments(view, spot) * phase
-    order = 1j * np.arange(resolution.harmonics + 1)[:, None]
-    part: dict[str, _Term] = {
-        "rate": (here, folded.rate),
-        "column_density": (here, folded.by_column),
-        "log_temperature": (here, folded.by_log_temperature),
-        "longitude": (order * here, folded.rate),
-    }
-    for name, (lower, upper, width) in pairs.items():
-        change = (moments(upper, spot) - moments(lower, spot)) * phase / width
-        part[name] = (change, folded.rate)
-    part["colatitude"] = (_by_colatitude(view, spot, moments, steps) * phase, folded.rate)
-    part["angular_radius"] = (_by_radius(view, spot, moments, steps) * phase, folded.rate)
-    return part
-
-
-def _fold(
-    scene: Scene, response: Response, spot: HotSpot, interval: Interval, resolution: Resolution
-) -> FoldedSpectrum:
-    return fold_spectrum(
+    folded = fold_spectrum(
         response, scene.column_cm2, spot.temperature_kev, interval, resolution.redshift_terms
     )
-
-
-_MomentsOf = Callable[[View, HotSpot], Complexes]
-
-
-def _by_colatitude(view: View, spot: HotSpot, moments: _MomentsOf, steps: Steps) -> Complexes:
-    """Central difference; a centre carried over a pole comes down on the other side."""
-    values = []
-    for sign in (1.0, -1.0):
-        moved = spot.colatitude + sign * steps.colatitude
-        is_beyond = not 0.0 <= moved <= np.pi
-        folded = np.pi - abs(np.pi - abs(moved)) if is_beyond else moved
-        value = moments(view, replace(spot, colatitude=folded))
-        if is_beyond:
-            value = value * longitude_factor(np.pi, len(value) - 1)[:, None]
-        values.append(value)
-    return np.asarray((values[0] - values[1]) / (2.0 * steps.colatitude))
-
-
-def _by_radius(view: View, spot: HotSpot, moments: _MomentsOf, steps: Steps) -> Complexes:
-    width = steps.angular_radius * spot.angular_radius
-    upper = moments(view, replace(spot, angular_radius=spot.angular_radius + width))
-    lower = moments(view, replace(spot, angular_radius=spot.angular_radius - width))
-    return np.asarray((upper - lower) / (2.0 * width))
+    phase = longitude_factor(spot.longitude, resolution.harmonics)[:, None]
+    terms: dict[str, _Term] = {
+        name: (values * phase, folded.rate) for name, values in changes.items()
+    }
+    here = terms["rate"][0]
+    terms["column_density"] = (here, folded.by_column)
+    terms["log_temperature"] = (here, folded.by_log_temperature)
+    terms["longitude"] = (1j * np.arange(resolution.harmonics + 1)[:, None] * here, folded.rate)
+    return terms
 
 
 def _neighbouring_views(star: Star, steps: Steps) -> dict[str, tuple[View, View, float]]:

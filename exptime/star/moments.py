@@ -40,6 +40,9 @@ from exptime.star.view import View
 
 Interval = tuple[float, float]
 
+_LARGEST = 400_000
+"""Waves kept at once: beyond the processor's cache more at a time is slower."""
+
 
 @dataclass(frozen=True, slots=True)
 class Moments:
@@ -86,7 +89,7 @@ def _legendre(count: int) -> tuple[Floats, Floats]:
 
 
 def ring_kernels(
-    view: View, emission: Emission, colatitude: Floats, nodes: int
+    view: View, emission: Emission, colatitude: Floats, resolution: Resolution
 ) -> RingKernels | None:
     """Evaluate the kernels of rings.
 
@@ -98,8 +101,8 @@ def ring_kernels(
         How its surface radiates.
     colatitude : ndarray, shape (n_ring,)
         rad.
-    nodes : int
-        Nodes on the visible arc; an even number.
+    resolution : Resolution
+        Counts to compute with; decides the nodes on the visible arcs.
 
     Returns
     -------
@@ -112,6 +115,7 @@ def ring_kernels(
     if not np.any(reach > 0.0):
         return None
     # Rays depend on |phi| alone: trace them on the positive half and mirror.
+    nodes = resolution.nodes(float(reach.max()))
     x, weight = _legendre(nodes)
     half = nodes // 2
     phi = reach[:, None] * x[half:]
@@ -180,8 +184,16 @@ def joint_moments(
         stack(spot.colatitude, spot.angular_radius, view.transitions, resolution.rings)
         for spot in spots
     ]
+    count = sum(len(rings.colatitude) for rings in stacks)
+    size = count * resolution.harmonics * resolution.nodes()
+    if redshift_range is not None and size > _LARGEST and len(spots) > 1:
+        middle = len(spots) // 2
+        return [
+            *joint_moments(view, emission, spots[:middle], resolution, redshift_range),
+            *joint_moments(view, emission, spots[middle:], resolution, redshift_range),
+        ]
     colatitude = np.concatenate([rings.colatitude for rings in stacks])
-    kernels = ring_kernels(view, emission, colatitude, resolution.nodes)
+    kernels = ring_kernels(view, emission, colatitude, resolution)
     harmonics, terms = resolution.harmonics, resolution.redshift_terms
     if kernels is None:
         empty = np.zeros((harmonics + 1, terms), complex)

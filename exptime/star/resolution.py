@@ -27,10 +27,16 @@ class Resolution:
     redshift_terms: int
     node_factor: float = 1.0
 
-    @property
-    def nodes(self) -> int:
-        """Azimuth nodes on a visible arc: an even number that resolves the highest harmonic."""
-        return 2 * math.ceil(0.5 * self.node_factor * (1.7 * self.harmonics + 30.0))
+    def nodes(self, reach: float = math.pi) -> int:
+        """Azimuth nodes on a visible arc: an even number that resolves the highest harmonic.
+
+        Parameters
+        ----------
+        reach : float
+            Half of the arc, rad.
+        """
+        turns = 1.7 * self.harmonics * reach / math.pi
+        return 2 * math.ceil(0.5 * self.node_factor * (turns + 30.0))
 
     def doubled(self) -> Resolution:
         """Return twice the count of everything."""
