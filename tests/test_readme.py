@@ -8,7 +8,7 @@ import re
 import pytest
 
 from exptime.cli.parser import COMMANDS, build_parser
-from tests.makers.readme import README, with_keys
+from tests.makers.readme import README, with_keys, with_session
 
 TEXT = README.read_text(encoding="utf-8")
 
@@ -41,3 +41,13 @@ def test_the_examples_of_the_interface_are_true() -> None:
     runner = doctest.DocTestRunner(optionflags=doctest.ELLIPSIS | doctest.NORMALIZE_WHITESPACE)
     runner.run(examples)
     assert runner.summarize(verbose=False).failed == 0
+
+
+def _without_numbers(text: str) -> str:
+    return re.sub(r"[\s─━-]+", " ", re.sub(r"\d[\d.]*", "#", text))
+
+
+@pytest.mark.slow
+def test_the_session_prints_what_the_readme_shows() -> None:
+    """The commands of the session run; words are compared, last digits may differ elsewhere."""
+    assert _without_numbers(with_session(TEXT)) == _without_numbers(TEXT)

@@ -7,13 +7,14 @@ import os
 from pathlib import Path
 from typing import Any
 
+import html5lib
 import jsonschema
 import numpy as np
 import pytest
 
 from tests.cli import schemas
 from tests.cli.running import Run, run, run_fresh
-from tests.cli.targets import DRAWN, KNOWN
+from tests.cli.targets import DRAWN, KNOWN, changed
 
 SOFT = ("-i", "soft-concentrator")
 
@@ -188,3 +189,29 @@ def test_a_fresh_process_gives_the_answer_on_standard_output_alone(folder: Path)
     shown = run_fresh("forecast", "known.yaml", *SOFT, "--exposure", "1Ms", "--format", "json")
     assert (shown.status, shown.errors) == (0, "")
     jsonschema.validate(json.loads(shown.output), schemas.forecast(1))
+
+
+def test_the_page_is_one_html_document_that_loads_nothing(folder: Path) -> None:
+    """Markup in the name of the target is text there."""
+    text = changed(KNOWN, ("name: Known source", 'name: "<script>alert(1)</script> [red]x"'))
+    Path("known.yaml").write_text(text, encoding="utf-8")
+    options = (*SOFT, "--exposure", "300ks,1Ms", "--goal", "radius 5 %")
+    shown = run("forecast", "known.yaml", *options, "--format", "html", "--output", "page.html")
+    assert shown == Run(0, "", "")
+    page = Path("page.html").read_text(encoding="utf-8")
+    html5lib.HTMLParser(strict=True).parse(page)
+    assert "<script>alert" not in page
+    assert "&lt;script&gt;" in page
+    for tag in ("src=", "<link", "@import", "url("):
+        for piece in page.split(tag)[1:]:
+            assert piece.lstrip("\"'").startswith(("data:", "#")), piece[:80]
+
+
+def test_the_text_report_keeps_to_80_columns_when_piped(folder: Path) -> None:
+    """And shows markup in a name as it is."""
+    text = changed(KNOWN, ("name: Known source", 'name: "[red]Known[/red] source"'))
+    shown = run("forecast", "-", *SOFT, "--exposure", "300ks,1Ms", given=text)
+    assert (shown.status, shown.errors) == (0, "")
+    assert "[red]Known[/red] source" in shown.output
+    assert max(map(len, shown.output.splitlines())) <= 80
+    assert "\x1b" not in shown.output

@@ -16,7 +16,9 @@ from tests.imports import ROOT
 
 README = ROOT / "README.md"
 _KEYS = re.compile(r"(<!-- keys: (\w+) -->\n).*?(<!-- end of keys -->)", re.DOTALL)
-_OUTPUT = re.compile(r"(<!-- output: exptime (.+?) -->\n)(?:```text\n.*?\n```\n)?", re.DOTALL)
+_OUTPUT = re.compile(
+    r"(<!-- output(?: of (\d+) lines)?: exptime (.+?) -->\n)(?:```text\n.*?\n```\n)?", re.DOTALL
+)
 
 
 def with_keys(text: str) -> str:
@@ -34,11 +36,13 @@ def with_keys(text: str) -> str:
 def with_session(text: str) -> str:
     """Return the README with the commands of the session and what they print."""
     with tempfile.TemporaryDirectory() as folder:
-        return _OUTPUT.sub(lambda found: f"{found[1]}{_shown(found[2], Path(folder))}", text)
+        return _OUTPUT.sub(
+            lambda found: f"{found[1]}{_shown(found[3], found[2], Path(folder))}", text
+        )
 
 
-def _shown(arguments: str, folder: Path) -> str:
-    """Return one command and its output as a block of Markdown."""
+def _shown(arguments: str, most: str | None, folder: Path) -> str:
+    """Return one command and its output, or its first lines, as a block of Markdown."""
     done = subprocess.run(
         [sys.executable, "-m", "exptime", *shlex.split(arguments)],
         cwd=folder,
@@ -47,7 +51,10 @@ def _shown(arguments: str, folder: Path) -> str:
         check=True,
         timeout=300,
     )
-    return f"```text\n$ exptime {arguments}\n{done.stdout.rstrip()}\n```\n"
+    lines = done.stdout.rstrip().splitlines()
+    if most is not None and len(lines) > int(most):
+        lines = [*lines[: int(most)], "[...]"]
+    return "\n".join(["```text", f"$ exptime {arguments}", *lines, "```", ""])
 
 
 if __name__ == "__main__":
