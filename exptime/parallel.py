@@ -108,14 +108,21 @@ def workers(jobs: int) -> Iterator[Workers]:
     jobs : int
         Number of processes, at least 1.
     """
-    from threadpoolctl import threadpool_limits
-
     team = Workers(jobs)
-    with threadpool_limits(limits=1, user_api="blas"):
+    with one_thread():
         try:
             yield team
         finally:
             team.close()
+
+
+@contextmanager
+def one_thread() -> Iterator[None]:
+    """Hold BLAS to one thread for the length of a block."""
+    from threadpoolctl import threadpool_limits
+
+    with threadpool_limits(limits=1, user_api="blas"):
+        yield
 
 
 def _hold_to_one_thread() -> None:

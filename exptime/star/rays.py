@@ -127,17 +127,17 @@ def _inward_nodes(
 
     w = R/r runs from 1 to the periastron w_p, w = w_p - (w_p - 1) y².
     """
+    # The periastron in closed form (Morsink et al. 2007), nan where the ray falls in; Newton on
+    # w_p - 1, written without cancellation, takes off what the subtraction costs.
+    with np.errstate(invalid="ignore"):
+        third = (np.arccos(1.5 * np.sqrt(3.0) * u * np.sqrt(1.0 - u) / sine) + 2.0 * np.pi) / 3.0
+    depth = -0.5 * np.sqrt(3.0 * (1.0 - u)) / (sine * np.cos(third)) - 1.0
     target = (1.0 - u) * cosine**2 / sine**2
-    depth = target / (2.0 - 3.0 * u)
-    # Newton on (w_p - 1), written without cancellation; falls in where no root exists.
-    for _ in range(40):
+    for _ in range(3):
         value = depth * ((1.0 - u) * (2.0 + depth) - u * (1.0 + depth) ** 2) - target
         slope = (1.0 - u) * (2.0 + 2.0 * depth) - u * (1.0 + depth) * (1.0 + 3.0 * depth)
-        with np.errstate(all="ignore"):
-            step = np.where(slope > 0.0, value / slope, np.nan)
-        depth = depth - step
-        if not np.any(np.abs(step) > 1e-16 * depth):
-            break
+        depth = depth - value / slope
+    depth = np.maximum(depth, 0.0)
     x, weight = _unit_nodes()
     peri, v = 1.0 + depth[..., None], u[..., None]
     w = peri - depth[..., None] * x**2

@@ -8,6 +8,7 @@ by 3.84.
 from __future__ import annotations
 
 import math
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -72,12 +73,15 @@ class ProfilePoint:
         Whether the refit did.
     vector : ndarray, shape (n,)
         Where everything else went.
+    levels : ndarray, shape (n_level,)
+        Where the background levels went.
     """
 
     value: float
     rise: float
     has_converged: bool
     vector: Floats
+    levels: Floats
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -128,24 +132,24 @@ class Profile:
 
 
 def profile_of(setting: Setting, quantity: Quantity, bound: float, direction: Floats) -> Profile:
-    """Step a quantity and refit everything else.
+    """Step a quantity and refit everything else; the arguments are those of `side_of`."""
+    sides = [side_of(setting, quantity, sign * bound, sign * direction) for sign in (-1.0, 1.0)]
+    return joined(setting, quantity, bound, sides)
 
-    Parameters
-    ----------
-    setting : Setting
-        Where.
-    quantity : {"mass", "radius", "compactness"}
-        Which quantity.
-    bound : float
-        Its standard deviation by the information matrix: the measure of the steps.
-    direction : ndarray, shape (n,)
-        Change of the vector along the ridge for one `bound`, the first guess.
-    """
-    counts = setting.expected_counts
+
+def joined(
+    setting: Setting, quantity: Quantity, bound: float, sides: Sequence[Sequence[ProfilePoint]]
+) -> Profile:
+    """Return a profile from its two sides, in any order."""
     truth = value_of(setting, quantity, setting.truth)
-    points = [ProfilePoint(value=truth, rise=0.0, has_converged=True, vector=setting.truth)]
-    for sign in (-1.0, 1.0):
-        points += _side(setting, counts, quantity, truth, sign * bound, sign * direction)
+    middle = ProfilePoint(
+        value=truth,
+        rise=0.0,
+        has_converged=True,
+        vector=setting.truth,
+        levels=setting.penalty.level_center,
+    )
+    points = [middle, *(point for side in sides for point in side)]
     ordered = tuple(sorted(points, key=lambda point: point.value))
     intervals = tuple(_interval(ordered, truth, rise) for rise in RISES)
     return Profile(
@@ -154,6 +158,64 @@ def profile_of(setting: Setting, quantity: Quantity, bound: float, direction: Fl
         bound=bound,
         points=ordered,
         intervals=(intervals[0], intervals[1]),
+    )
+
+
+def side_of(
+    setting: Setting, quantity: Quantity, bound: float, direction: Floats
+) -> list[ProfilePoint]:
+    """Step a quantity to one side of the truth and refit everything else.
+
+    Parameters
+    ----------
+    setting : Setting
+        Where.
+    quantity : {"mass", "radius", "compactness"}
+        Which quantity.
+    bound : float
+        Its standard deviation by the information matrix, the measure of the steps; negative for
+        the lower side.
+    direction : ndarray, shape (n,)
+        Change of the vector along the ridge for one `bound`, the first guess.
+    """
+    counts = setting.expected_counts
+    truth = value_of(setting, quantity, setting.truth)
+    points: list[ProfilePoint] = []
+    before, vector = setting.truth, setting.truth + _STEP * direction
+    levels = None
+    for step in range(1, _MOST_STEPS + 1):
+        value = truth + step * _STEP * bound
+        if value <= 0.0:
+            break
+        constraint = constraint_at(setting, quantity, value)
+        found: Fit = fit(
+            setting.model, counts, setting.penalty, vector, constraint, setting.bounds, levels
+        )
+        if not math.isfinite(found.deviance):
+            break
+        points.append(
+            ProfilePoint(
+                value=value,
+                rise=found.deviance,
+                has_converged=found.has_converged,
+                vector=found.vector,
+                levels=found.levels,
+            )
+        )
+        if found.deviance > _HIGHEST:
+            break
+        # Go on along the ridge as the last two points show it.
+        before, vector, levels = found.vector, 2.0 * found.vector - before, found.levels
+    return points
+
+
+def is_inside(setting: Setting, points: Sequence[ProfilePoint], bounds: Bounds) -> bool:
+    """Whether hard limits, the background's included, would change none of the points."""
+    model = setting.model
+    return all(
+        bool(np.all((point.vector > bounds.lower) & (point.vector < bounds.upper)))
+        and bool(np.all(model.background_per_s + point.levels @ model.levels.shape_per_s >= 0.0))
+        for point in points
     )
 
 
@@ -212,47 +274,6 @@ def ridge_direction(experiment: Experiment, covariance: Floats, quantity: Quanti
     if sigma > 0.0:
         full[experiment.is_free] = along / sigma
     return full
-
-
-def _side(
-    setting: Setting,
-    counts: Floats,
-    quantity: Quantity,
-    truth: float,
-    bound: float,
-    direction: Floats,
-) -> list[ProfilePoint]:
-    points: list[ProfilePoint] = []
-    before, vector = setting.truth, setting.truth + _STEP * direction
-    levels = None
-    for step in range(1, _MOST_STEPS + 1):
-        value = truth + step * _STEP * bound
-        if value <= 0.0:
-            break
-        found: Fit = fit(
-            setting.model,
-            counts,
-            setting.penalty,
-            vector,
-            constraint_at(setting, quantity, value),
-            setting.bounds,
-            levels,
-        )
-        if not math.isfinite(found.deviance):
-            break
-        points.append(
-            ProfilePoint(
-                value=value,
-                rise=found.deviance,
-                has_converged=found.has_converged,
-                vector=found.vector,
-            )
-        )
-        if found.deviance > _HIGHEST:
-            break
-        # Go on along the ridge as the last two points show it.
-        before, vector, levels = found.vector, 2.0 * found.vector - before, found.levels
-    return points
 
 
 def _interval(points: tuple[ProfilePoint, ...], truth: float, rise: float) -> Interval:

@@ -17,6 +17,7 @@ from exptime.instrument.records import (
 from exptime.interstellar.absorption import load_absorption
 from exptime.observation.instrument_response import instrument_response
 from exptime.observation.rates import source_rates
+from exptime.parallel import one_thread
 from exptime.progress import Progress, silent
 from exptime.star.convergence import photon_flux
 from exptime.study.case import Geometry, Question, resolutions_for, scene_of
@@ -60,7 +61,10 @@ def make_pulse(
     energies = np.asarray(energies_kev, float)
     band = _ideal_detector(target)
     (star, spots), notes = _geometry(target, band, draws, jobs, read_instrument, progress)
-    flux = photon_flux(star, spots, target.emission, target.distance.value, energies, phase_bins)
+    with one_thread():
+        flux = photon_flux(
+            star, spots, target.emission, target.distance.value, energies, phase_bins
+        )
     return Pulse(
         phase=_centers(phase_bins),
         energies_kev=energies,
@@ -107,9 +111,10 @@ def make_counts(
         goals=(),
     )
     bins = instrument.phase_bins
-    rates = source_rates(
-        scene_of(target, *geometry), question.response, bins, resolutions_for(question, geometry)
-    )
+    scene = scene_of(target, *geometry)
+    with one_thread():
+        resolutions = resolutions_for(question, geometry)
+        rates = source_rates(scene, question.response, bins, resolutions)
     share = exposure_s / bins
     return Counts(
         phase=_centers(bins),

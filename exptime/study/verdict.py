@@ -9,6 +9,7 @@ from exptime.study.profile import Profile
 from exptime.study.verify_records import Hump, Scatter, Simulations, Verdict
 
 _TOLERATED = 0.15
+_TOLERATED_SIDE = 0.30
 _MANY_ELSEWHERE = 0.05
 _SIGMAS = 3.0
 _GRAVEST_FIRST: tuple[Verdict, ...] = (
@@ -42,8 +43,9 @@ def verdict_of(
 
     Notes
     -----
-    A bound holds when profile and scatter agree with it to 15 per cent, or, for the scatter and
-    coverage of few refits, to three of their own standard errors.
+    A bound holds when profile and scatter agree with it to 15 per cent, or, for the scatter of
+    few refits, to three of their own standard errors; and when each side of the profile's
+    interval agrees with it to 30 per cent.
     """
     profile = profiles[0]
     if is_prior_limited:
@@ -80,6 +82,9 @@ def verdict_of(
                 f"The bound is pessimistic: {witness} gives {ratio:.2f} of it, because limits or "
                 "a fold of the ridge cut the range of fits."
             )
+    lopsided = _lopsided(profile)
+    if lopsided is not None:
+        return lopsided
     return "holds", "The bound holds: " + ", ".join(
         f"{witness} gives {ratio:.2f} of it" for witness, ratio, _ in ratios
     ) + "."
@@ -88,6 +93,29 @@ def verdict_of(
 def overall(words: Sequence[Verdict]) -> Verdict:
     """Return the verdict over several geometries: the gravest of theirs."""
     return next(word for word in _GRAVEST_FIRST if word in words)
+
+
+def _lopsided(profile: Profile) -> tuple[Verdict, str] | None:
+    """Return the verdict on an interval of which one side is far from the bound."""
+    interval = profile.intervals[0]
+    sides = {
+        "below": (profile.truth - interval.lower) / profile.bound,
+        "above": (interval.upper - profile.truth) / profile.bound,
+    }
+    where = max(sides, key=lambda side: sides[side])
+    if sides[where] > 1.0 + _TOLERATED_SIDE:
+        return "optimistic", (
+            f"The bound is optimistic by a factor {sides[where]:.2f} {where} the truth, by the "
+            f"profile likelihood: its interval is lopsided, {sides['below']:.2f} of the bound "
+            f"below and {sides['above']:.2f} above."
+        )
+    where = min(sides, key=lambda side: sides[side])
+    if sides[where] < 1.0 - _TOLERATED_SIDE:
+        return "pessimistic", (
+            f"The bound is pessimistic {where} the truth, where the profile likelihood gives "
+            f"{sides[where]:.2f} of it: limits or a fold of the ridge cut the range of fits."
+        )
+    return None
 
 
 def _value(hump: Hump, profile: Profile) -> float:

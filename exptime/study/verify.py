@@ -22,7 +22,14 @@ from exptime.study.case import Case, Question, answer, index_at
 from exptime.study.fingerprint import digest_of
 from exptime.study.geometries import Draws, GeometrySet, InstrumentReader, geometries_of
 from exptime.study.humps import climb, distinct_humps, hump_starts
-from exptime.study.profile import Profile, Setting, profile_of, ridge_direction
+from exptime.study.profile import (
+    ProfilePoint,
+    Setting,
+    is_inside,
+    joined,
+    ridge_direction,
+    side_of,
+)
 from exptime.study.refits import Observer, refit_one, summarise
 from exptime.study.setting import hard_limits, setting_of
 from exptime.study.verdict import verdict_of
@@ -215,15 +222,23 @@ def _check(
     geometry = geometries.geometries[index]
     setting, experiment, covariance = setting_of(question, geometry, plan.exposure_s)
     limits = hard_limits(setting.model.names)
+    quantities = [name for name in _PROFILED if _sigma(experiment, covariance, name) > 0.0]
     tasks = [
-        (replace(setting, bounds=bounds), quantity, experiment, covariance)
-        for bounds in (None, limits)
-        for quantity in _PROFILED
-        if _sigma(experiment, covariance, quantity) > 0.0
-    ]
-    kinds = len(tasks) // 2
+        (setting, limits, quantity, sign * _sigma(experiment, covariance, quantity),
+         sign * ridge_direction(experiment, covariance, quantity))
+        for quantity in quantities
+        for sign in (-1.0, 1.0)
+    ]  # fmt: skip
     total = len(tasks) + plan.simulations
-    profiles = team.map(_profile, tasks, lambda done, _: progress(done, total), fewest=2)
+    sides = team.map(_side, tasks, lambda done, _: progress(done, total), fewest=2)
+    profiles, bounded = (
+        tuple(
+            joined(setting, quantity, tasks[2 * row + 1][3],
+                   [sides[2 * row][kind], sides[2 * row + 1][kind]])
+            for row, quantity in enumerate(quantities)
+        )
+        for kind in (0, 1)
+    )  # fmt: skip
     starts = hump_starts(setting, geometries, index)
     ends = team.map(partial(climb, setting, limits), starts, fewest=2)
     humps = distinct_humps(setting, ends)
@@ -233,14 +248,14 @@ def _check(
             plan, label, setting, experiment, covariance, limits, team, ledger, keep,
             lambda done, _: progress(len(tasks) + done, total),
         )  # fmt: skip
-    is_prior_limited = bool(case.is_prior_limited[-1, QUANTITIES.index(tasks[0][1])])
-    word, reason = verdict_of(profiles[:kinds], humps, simulations, is_prior_limited)
+    is_prior_limited = bool(case.is_prior_limited[-1, QUANTITIES.index(quantities[0])])
+    word, reason = verdict_of(profiles, humps, simulations, is_prior_limited)
     return CheckedGeometry(
         label=label,
         star=geometry[0],
         spots=geometry[1],
-        profiles=tuple(profiles[:kinds]),
-        bounded_profiles=tuple(profiles[kinds:]),
+        profiles=profiles,
+        bounded_profiles=bounded,
         humps=tuple(humps),
         simulations=simulations,
         is_prior_limited=is_prior_limited,
@@ -249,13 +264,17 @@ def _check(
     )
 
 
-_Task = tuple[Setting, Quantity, Experiment, Floats]
+_Task = tuple[Setting, Bounds, Quantity, float, Floats]
+_Side = list[ProfilePoint]
 
 
-def _profile(task: _Task) -> Profile:
-    setting, quantity, experiment, covariance = task
-    bound = _sigma(experiment, covariance, quantity)
-    return profile_of(setting, quantity, bound, ridge_direction(experiment, covariance, quantity))
+def _side(task: _Task) -> tuple[_Side, _Side]:
+    """Return one side of a profile, and the same within hard limits."""
+    setting, limits, quantity, bound, direction = task
+    points = side_of(setting, quantity, bound, direction)
+    if is_inside(setting, points, limits):
+        return points, points
+    return points, side_of(replace(setting, bounds=limits), quantity, bound, direction)
 
 
 def _sigma(experiment: Experiment, covariance: Floats, quantity: Quantity) -> float:
