@@ -126,8 +126,8 @@ def procedure(verification: Verification) -> tuple[str, ...]:
             "the bound holds."
         )
     sentences.append(
-        "A bound holds here when profile and scatter agree with it to 15 per cent, or to three "
-        "standard errors of few refits (common practice)."
+        "A bound holds here when profile and scatter agree with it to 15 per cent (few refits: to "
+        "three standard errors) and each side of the interval to 30: common practice, no law."
     )
     if len(verification.geometries) > 1:
         sentences.append(

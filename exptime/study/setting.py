@@ -11,7 +11,7 @@ from exptime.arrays import Floats
 from exptime.information.covariance import invert
 from exptime.information.model import Bounds, Model, Penalty
 from exptime.information.parameters import prior_matrix
-from exptime.information.precision import Experiment
+from exptime.information.precision import QUANTITIES, Experiment, Quantity
 from exptime.observation.linearise import linearise
 from exptime.study.case import Geometry, Question, experiment_of, resolutions_for, scene_of
 from exptime.study.profile import Setting
@@ -78,3 +78,9 @@ def hard_limits(names: Sequence[str]) -> Bounds:
         }.get(kind, (-math.inf, math.inf))
         lower[index], upper[index] = low, high
     return Bounds(lower=lower, upper=upper)
+
+
+def sigma_of(experiment: Experiment, covariance: Floats, quantity: Quantity) -> float:
+    """Return the standard deviation of a quantity by the information matrix."""
+    row = experiment.directions()[QUANTITIES.index(quantity)]
+    return math.sqrt(max(float(row @ covariance @ row), 0.0))

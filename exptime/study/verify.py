@@ -2,8 +2,7 @@
 
 from __future__ import annotations
 
-import math
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass, field, replace
 from functools import partial
 
@@ -12,7 +11,7 @@ import numpy as np
 from exptime.arrays import Floats
 from exptime.errors import Fault, InputError
 from exptime.information.model import Bounds
-from exptime.information.precision import QUANTITIES, Experiment, Quantity
+from exptime.information.precision import QUANTITIES, Quantity
 from exptime.instrument.records import Instrument
 from exptime.interstellar.absorption import load_absorption
 from exptime.observation.instrument_response import instrument_response
@@ -30,17 +29,12 @@ from exptime.study.profile import (
     ridge_direction,
     side_of,
 )
-from exptime.study.refits import Observer, refit_one, summarise
-from exptime.study.setting import hard_limits, setting_of
+from exptime.study.setting import hard_limits, setting_of, sigma_of
+from exptime.study.simulate import Keep, Ledger, simulate
 from exptime.study.verdict import verdict_of
-from exptime.study.verify_records import CheckedGeometry, Refit, Simulations, Verification
+from exptime.study.verify_records import CheckedGeometry, Verification
 from exptime.study.versions import versions
 from exptime.target.records import Target
-
-Ledger = dict[str, list[float]]
-"""Refits done so far: label and number to [has converged, vector...]."""
-
-Keep = Callable[[Ledger], None]
 
 _PROFILED: tuple[Quantity, ...] = ("radius", "mass", "compactness")
 _POINTS = {
@@ -48,7 +42,6 @@ _POINTS = {
     "the 16 per cent geometry": 0.16,
     "the 84 per cent geometry": 0.84,
 }
-_BLOCK = 16
 PARTS = 8
 """Shares of the progress: search, forecast, and six for the verification."""
 
@@ -193,10 +186,6 @@ def last_parts(progress: Progress, done: int, total: int) -> None:
     progress(2 * total + (PARTS - 2) * done, PARTS * total)
 
 
-def _counted(progress: Progress, before: int, total: int, done: int, _: int) -> None:
-    progress(before + done, total)
-
-
 def _chosen(geometries: GeometrySet, cases: Sequence[Case]) -> list[tuple[str, int]]:
     """Return labels and indices of the geometries to verify."""
     if geometries.is_known:
@@ -222,9 +211,9 @@ def _check(
     geometry = geometries.geometries[index]
     setting, experiment, covariance = setting_of(question, geometry, plan.exposure_s)
     limits = hard_limits(setting.model.names)
-    quantities = [name for name in _PROFILED if _sigma(experiment, covariance, name) > 0.0]
+    quantities = [name for name in _PROFILED if sigma_of(experiment, covariance, name) > 0.0]
     tasks = [
-        (setting, limits, quantity, sign * _sigma(experiment, covariance, quantity),
+        (setting, limits, quantity, sign * sigma_of(experiment, covariance, quantity),
          sign * ridge_direction(experiment, covariance, quantity))
         for quantity in quantities
         for sign in (-1.0, 1.0)
@@ -244,8 +233,9 @@ def _check(
     humps = distinct_humps(setting, ends)
     simulations = None
     if plan.simulations:
-        simulations = _simulate(
-            plan, label, setting, experiment, covariance, limits, team, ledger, keep,
+        simulations = simulate(
+            plan.simulations, plan.draws.seed, label, setting, experiment, covariance,
+            limits, team, ledger, keep,
             lambda done, _: progress(len(tasks) + done, total),
         )  # fmt: skip
     is_prior_limited = bool(case.is_prior_limited[-1, QUANTITIES.index(quantities[0])])
@@ -275,43 +265,3 @@ def _side(task: _Task) -> tuple[_Side, _Side]:
     if is_inside(setting, points, limits):
         return points, points
     return points, side_of(replace(setting, bounds=limits), quantity, bound, direction)
-
-
-def _sigma(experiment: Experiment, covariance: Floats, quantity: Quantity) -> float:
-    row = experiment.directions()[QUANTITIES.index(quantity)]
-    return math.sqrt(max(float(row @ covariance @ row), 0.0))
-
-
-def _simulate(
-    plan: Plan,
-    label: str,
-    setting: Setting,
-    experiment: Experiment,
-    covariance: Floats,
-    limits: Bounds,
-    team: Workers,
-    ledger: Ledger,
-    keep: Keep | None,
-    progress: Progress,
-) -> Simulations:
-    free = experiment.is_free
-    full = np.zeros((len(free), len(free)))
-    full[np.ix_(free, free)] = covariance
-    seeds = np.random.SeedSequence((plan.draws.seed, 7)).spawn(plan.simulations)
-    observer = Observer(setting=setting, covariance=full, seeds=tuple(seeds), bounds=limits)
-    missing = [n for n in range(plan.simulations) if f"{label}:{n}" not in ledger]
-    finished = plan.simulations - len(missing)
-    for first in range(0, len(missing), _BLOCK):
-        block = missing[first : first + _BLOCK]
-        told = partial(_counted, progress, finished + first, plan.simulations)
-        results = team.map(partial(refit_one, observer), block, told)
-        for number, (has_converged, vector) in zip(block, results, strict=True):
-            ledger[f"{label}:{number}"] = [float(has_converged), *vector.tolist()]
-        if keep is not None:
-            keep(ledger)
-    refits: list[Refit] = []
-    for number in range(plan.simulations):
-        flag, *values = ledger[f"{label}:{number}"]
-        refits.append((bool(flag), np.array(values)))
-    bounds = np.array([_sigma(experiment, covariance, quantity) for quantity in QUANTITIES])
-    return summarise(observer, refits, bounds)
