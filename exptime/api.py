@@ -20,7 +20,6 @@ from exptime.given import read_target as read_target
 from exptime.instrument import reader as instrument_reader
 from exptime.instrument.records import Instrument
 from exptime.progress import Progress, silent
-from exptime.quantities import from_quantities
 from exptime.report.inputs import Checked, InstrumentList
 from exptime.report.results import CountsResult, ForecastResult, PulseResult
 from exptime.report.verification import VerificationResult
@@ -97,7 +96,7 @@ def pulse(
     draws, seed, jobs, fixed_star, progress
         As for `forecast`; they count where the target gives no hot spots.
     """
-    energies_kev = from_quantities(energies, "keV", "energies")
+    energies_kev = given.energies(energies)
     return PulseResult(
         make_pulse(
             given.target(target),
@@ -145,7 +144,7 @@ def expected_counts(
         make_counts(
             given.target(target),
             chosen,
-            given.exposures(exposure)[0],
+            given.exposure(exposure),
             draws=given.draws(draws, seed, fixed_star),
             jobs=given.whole(jobs, "jobs", 1, 1024),
             read_instrument=instrument_reader.read_instrument,
@@ -213,7 +212,7 @@ def forecast(
             given.target(target),
             given.instrument(instrument),
             times,
-            tuple(given.goal(*goal) for goal in goals),
+            given.goals(goals),
             margin=margin,
             draws=given.draws(draws, seed, fixed_star),
             jobs=given.whole(jobs, "jobs", 1, 1024),
@@ -263,7 +262,7 @@ def verify(
     """
     known, chosen = given.target(target), given.instrument(instrument)
     plan = Plan(
-        exposure_s=given.exposures(exposure)[0],
+        exposure_s=given.exposure(exposure),
         simulations=given.simulations(simulations),
         draws=given.draws(draws, seed, fixed_star),
     )

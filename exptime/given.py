@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Iterable, Sequence
 from typing import TYPE_CHECKING, Final, TypeAlias
 
 from exptime.errors import Fault, InputError
@@ -75,12 +75,31 @@ def instrument(instrument: Instrument | str) -> Instrument:
 def exposures(exposures: Many) -> tuple[float, ...]:
     """Return exposures in seconds."""
     times = from_quantities(exposures, "s", "exposures")
-    for time in times:
-        if not 1.0 <= time <= _LONGEST_S:
-            raise InputError(
-                Fault(f"{time:g} s is no exposure.", "exposures", "Give 1 s to 1e8 s.")
-            )
+    _within(times, 1.0, _LONGEST_S, "exposures", "s")
     return times
+
+
+def exposure(exposure: One) -> float:
+    """Return one exposure in seconds."""
+    time = from_quantity(exposure, "s", "exposure")
+    _within((time,), 1.0, _LONGEST_S, "exposure", "s")
+    return time
+
+
+def energies(energies: Many) -> tuple[float, ...]:
+    """Return photon energies in keV."""
+    kev = from_quantities(energies, "keV", "energies")
+    if min(kev) <= 0.0:
+        remedy = "Give energies above zero."
+        raise InputError(Fault(f"{min(kev):g} keV is no photon energy.", "energies", remedy))
+    return kev
+
+
+def _within(values: Sequence[float], low: float, high: float, name: str, unit: str) -> None:
+    for value in values:
+        if not low <= value <= high:
+            remedy = f"Give {low:g} to {high:g} {unit}."
+            raise InputError(Fault(f"{value:g} {unit} is out of range.", name, remedy))
 
 
 def draws(count: int, seed: int, is_star_fixed: bool) -> Draws:
@@ -90,6 +109,17 @@ def draws(count: int, seed: int, is_star_fixed: bool) -> Draws:
         seed=whole(seed, "seed", 0, 2**63 - 1),
         is_star_fixed=bool(is_star_fixed),
     )
+
+
+def goals(pairs: Iterable[object]) -> tuple[Goal, ...]:
+    """Return goals from pairs of a quantity and a precision."""
+    found = []
+    for pair in pairs:
+        if not isinstance(pair, (tuple, list)) or len(pair) != 2:
+            remedy = 'Give pairs, for example ("radius", 0.05).'
+            raise InputError(Fault(f"{pair!r} is no goal.", "goals", remedy))
+        found.append(goal(*pair))
+    return tuple(found)
 
 
 def goal(quantity: str, precision: float) -> Goal:
@@ -109,7 +139,11 @@ def goal(quantity: str, precision: float) -> Goal:
 
 def whole(value: int, name: str, minimum: int, maximum: int) -> int:
     """Return a whole number within bounds."""
-    if isinstance(value, bool) or int(value) != value or not minimum <= value <= maximum:
+    try:
+        is_good = not isinstance(value, bool) and value == int(value)
+    except (TypeError, ValueError, OverflowError):
+        is_good = False
+    if not is_good or not minimum <= value <= maximum:
         raise InputError(
             Fault(f"{value!r} does not do.", name, f"Give a whole number, {minimum} to {maximum}.")
         )
