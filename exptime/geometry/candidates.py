@@ -12,7 +12,7 @@ import numpy as np
 from exptime.arrays import Booleans, Floats
 from exptime.geometry.likelihood import bands_of, fractions_of, log_likelihood
 from exptime.observation.rates import source_harmonics
-from exptime.observation.response import Response
+from exptime.observation.response import Response, timing_factor
 from exptime.observation.scene import Scene
 from exptime.star.ray_table import load_ray_table
 from exptime.star.records import HotSpot, Star
@@ -122,6 +122,7 @@ def evaluate(search: Search, point: Floats) -> Candidate | None:
         return None
     scene = _scene(search.target, star, spots)
     harmonics = source_harmonics(scene, view, search.pulses, (_FINE, _FINE))
+    harmonics *= timing_factor(search.pulses, star.spin_hz, _FINE.harmonics)
     bands = bands_of(search.target)
     fractions = fractions_of(search.target, bands, harmonics)
     likelihood = log_likelihood(search.target, bands, harmonics, fractions)

@@ -81,6 +81,8 @@ def band_responses(
         nodes_kev=np.concatenate([part.nodes_kev for part in parts]),
         matrix=matrix,
         cross_section_cm2=np.concatenate([part.cross_section_cm2 for part in parts]),
+        time_bin_s=np.array([part.time_bin_s for part in parts]),
+        clock_error_s=np.array([part.clock_error_s for part in parts]),
     )
 
 

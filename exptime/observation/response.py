@@ -25,15 +25,15 @@ class Response:
         without the area, for a flux.
     cross_section_cm2 : ndarray, shape (n_node,)
         Absorption per hydrogen atom, cm²; zero where the column is taken off.
-    time_bin_s, clock_error_s : float
-        Full width of the time bin and one-sigma clock error, s.
+    time_bin_s, clock_error_s : float or ndarray, shape (n_channel,)
+        Full width of the time bin and one-sigma clock error, s; of all channels or of each.
     """
 
     nodes_kev: Floats
     matrix: Floats
     cross_section_cm2: Floats
-    time_bin_s: float = 0.0
-    clock_error_s: float = 0.0
+    time_bin_s: float | Floats = 0.0
+    clock_error_s: float | Floats = 0.0
 
 
 def timing_factor(response: Response, spin_hz: float, highest: int) -> Floats:
@@ -50,9 +50,9 @@ def timing_factor(response: Response, spin_hz: float, highest: int) -> Floats:
 
     Returns
     -------
-    ndarray, shape (highest + 1,)
+    ndarray, shape (highest + 1,) or (highest + 1, n_channel)
         sinc(m f w) exp(-(2 pi m f s)²/2).
     """
     turn = np.arange(highest + 1) * spin_hz
-    smear = np.exp(-0.5 * (2.0 * np.pi * turn * response.clock_error_s) ** 2)
-    return np.asarray(np.sinc(turn * response.time_bin_s) * smear)
+    smear = np.exp(-0.5 * (2.0 * np.pi * np.multiply.outer(turn, response.clock_error_s)) ** 2)
+    return np.asarray(np.sinc(np.multiply.outer(turn, response.time_bin_s)) * smear)

@@ -8,12 +8,11 @@ from typing import Any
 from exptime.report.numbers import number, numbers
 from exptime.report.numbers import to_json as to_json
 from exptime.report.proof_document import verification_summary
+from exptime.study.pulse_records import Counts, Pulse
 from exptime.study.records import (
-    Counts,
     Forecast,
     GeometryResult,
     GoalResult,
-    Pulse,
     QuantityCurve,
     ReachedFraction,
     Spread,

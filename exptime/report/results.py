@@ -8,7 +8,8 @@ from typing import TYPE_CHECKING
 from exptime.arrays import Floats
 from exptime.information.precision import Quantity as QuantityName
 from exptime.quantities import to_quantity
-from exptime.study.records import Counts, Forecast, Pulse, Spread
+from exptime.study.pulse_records import Counts, Pulse
+from exptime.study.records import Forecast, Spread
 
 if TYPE_CHECKING:
     from astropy.units import Quantity

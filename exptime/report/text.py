@@ -21,7 +21,8 @@ from exptime.report.tables import (
 )
 from exptime.report.typesetting import fact_list, grid, heading, listed, paragraphs, render
 from exptime.report.words import printable
-from exptime.study.records import Counts, Forecast, Pulse
+from exptime.study.pulse_records import Counts, Pulse
+from exptime.study.records import Forecast
 
 if TYPE_CHECKING:
     from rich.console import RenderableType

@@ -234,7 +234,8 @@ def _spread(values: Floats, weights: Floats) -> Spread:
 
 
 def _goal_result(goal: Goal, required_s: Floats, question: Question, weights: Floats) -> GoalResult:
-    at = np.array([weights[required_s <= time].sum() for time in question.exposures_s])
+    reached = required_s <= question.exposures_s[:, None]
+    at = np.minimum(reached @ weights, 1.0)
     return GoalResult(
         goal=goal,
         exposure_s=_spread(required_s, weights),

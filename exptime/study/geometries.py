@@ -17,6 +17,7 @@ from exptime.instrument.records import Instrument
 from exptime.interstellar.absorption import Absorption
 from exptime.observation.bands import band_energy, band_responses
 from exptime.observation.rates import source_harmonics
+from exptime.observation.response import timing_factor
 from exptime.observation.scene import Scene
 from exptime.parallel import Workers
 from exptime.progress import Progress, silent
@@ -211,6 +212,7 @@ def _compare_fractions(
     )
     resolutions = [resolution_needed(view, spot, scene.emission, accuracy) for spot in scene.spots]
     harmonics = source_harmonics(scene, view, response, resolutions)
+    harmonics *= timing_factor(response, scene.star.spin_hz, len(harmonics) - 1)
     fractions = fractions_of(target, bands, harmonics)
     doubts = [
         f"The hot spots give a pulsed fraction ({measured.definition}, "

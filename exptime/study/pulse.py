@@ -23,7 +23,7 @@ from exptime.star.convergence import photon_flux
 from exptime.study.case import Geometry, Question, resolutions_for, scene_of
 from exptime.study.forecast import make_forecast
 from exptime.study.geometries import Draws, InstrumentReader, known_geometries
-from exptime.study.records import Counts, Pulse
+from exptime.study.pulse_records import Counts, Pulse
 from exptime.target.records import Target
 
 _MEDIAN_EXPOSURE_S = 1e6

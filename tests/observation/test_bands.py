@@ -11,6 +11,7 @@ from scipy.integrate import quad
 
 from exptime.arrays import Floats
 from exptime.constants import KEV_ERG
+from exptime.instrument.reader import read_instrument
 from exptime.instrument.records import (
     BackgroundKnowledge,
     EffectiveArea,
@@ -19,7 +20,7 @@ from exptime.instrument.records import (
 )
 from exptime.interstellar.absorption import Absorption, load_absorption
 from exptime.observation.bands import Band, band_energy, band_responses
-from exptime.observation.response import Response
+from exptime.observation.response import Response, timing_factor
 from exptime.target.records import Flux
 
 COLUMN, KT = 3e20, 0.15
@@ -126,3 +127,17 @@ def test_a_band_of_counts_is_a_band_of_measured_energy(absorption: Absorption) -
     spread = folded(band_responses(band, absorption, lambda name: broad))[0]
     sharp = folded(band_responses(band, absorption, lambda name: instrument_of()))[0]
     assert spread > 1.2 * sharp
+
+
+def test_counts_of_a_coarse_clock_lose_their_harmonics() -> None:
+    """A band measured in counts keeps the time bin of its instrument; photons keep everything."""
+    bands = (
+        Band(band_kev=(0.5, 1.5), instrument=None),
+        Band(band_kev=(0.5, 1.5), instrument="coarse-imager"),
+    )
+    response = band_responses(bands, load_absorption(), read_instrument)
+    factor = timing_factor(response, 300.0, 2)
+    np.testing.assert_allclose(factor[:, 0], 1.0, rtol=0, atol=0)
+    expected = np.sinc(np.arange(3) * 300.0 * 1.5e-3)
+    smear = np.exp(-0.5 * (2.0 * np.pi * np.arange(3) * 300.0 * 20e-6) ** 2)
+    np.testing.assert_allclose(factor[:, 1], expected * smear, rtol=1e-12)

@@ -16,15 +16,14 @@ from exptime.instrument.records import (
     Redistribution,
 )
 from exptime.star.records import HotSpot, Star
+from exptime.study.pulse_records import Counts, Pulse
 from exptime.study.records import (
-    Counts,
     ExpectedData,
     Forecast,
     GeometryResult,
     Goal,
     GoalResult,
     Numerics,
-    Pulse,
     QuantityCurve,
     ReachedFraction,
     Spread,

@@ -9,7 +9,7 @@ from exptime.instrument.reader import read_instrument
 from exptime.study.forecast import make_forecast
 from exptime.study.geometries import Draws
 from exptime.study.pulse import make_counts, make_pulse, with_phase_bins
-from exptime.study.records import Counts, Pulse
+from exptime.study.pulse_records import Counts, Pulse
 from tests.study.cases import DRAWN, KNOWN, SPOT, draws_of, instrument_of, target_of
 
 
