@@ -275,7 +275,7 @@ def test_pulse_with_an_instrument_gives_expected_counts(science: Science) -> Non
         ),
         (
             ("-i", "soft", "--exposure", "1Ms,2Ms"),
-            "--exposure: '1Ms,2Ms' is 2 exposures, one is wanted here. "
+            "--exposure: '1Ms,2Ms' is 2 exposures; one is wanted here. "
             "Write for example 300 ks.",
         ),
         (("--phases", "3"), "--phases: 3 is not between 4 and 1024."),

@@ -53,7 +53,7 @@ RANGES: list[tuple[Changes, str, str, str]] = [
     ({"mass": "2.9 Msun"}, "mass", "too compact", "radius was not given"),
     ({"mass": "2.0 Msun", "radius": "10 km"}, "radius", "too compact", "Change mass"),
     ({"mass": "1.2 Msun", "radius": "16 km", "spin_frequency": "700 Hz"}, "radius", "break-up", ""),
-    ({"mass": "1.5 Msun", "radius": "13 km", "spin_frequency": "740 Hz"}, "radius", "flat", ""),
+    ({"mass": "2.1 Msun", "radius": "12.5 km", "spin_frequency": "740 Hz"}, "radius", "flat", ""),
     ({"flux": FLUX.format("-1 erg s-1 cm-2", "0.5-2 keV")}, "flux.value", "out of range", "1e-20"),
     ({"flux": FLUX.format("4e-13 erg s-1 cm-2", "2-0.5 keV")}, "flux.band", "not rise", "first"),
     ({"flux": FLUX.format("4e-13 erg s-1 cm-2", "1-500 keV")}, "flux.band", "out of range", "80"),
