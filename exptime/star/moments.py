@@ -184,14 +184,6 @@ def joint_moments(
         stack(spot.colatitude, spot.angular_radius, view.transitions, resolution.rings)
         for spot in spots
     ]
-    count = sum(len(rings.colatitude) for rings in stacks)
-    size = count * resolution.harmonics * resolution.nodes()
-    if redshift_range is not None and size > _LARGEST and len(spots) > 1:
-        middle = len(spots) // 2
-        return [
-            *joint_moments(view, emission, spots[:middle], resolution, redshift_range),
-            *joint_moments(view, emission, spots[middle:], resolution, redshift_range),
-        ]
     colatitude = np.concatenate([rings.colatitude for rings in stacks])
     kernels = ring_kernels(view, emission, colatitude, resolution)
     harmonics, terms = resolution.harmonics, resolution.redshift_terms
@@ -203,18 +195,29 @@ def joint_moments(
     )
     variable = (2.0 * kernels.redshift - (high + low)) / (high - low)
     basis = _chebyshev(variable, terms) * kernels.photons[..., None]
-    cosine, sine = _waves(kernels.azimuth, harmonics)
-    real, imaginary = cosine @ basis, sine @ basis
-    results, first = [], 0
-    for rings in stacks:
-        part = slice(first, first + len(rings.colatitude))
-        factor = _extent(rings, harmonics)
-        values = np.einsum("rm,rmj->mj", factor, real[part]) - 1j * np.einsum(
-            "rm,rmj->mj", factor, imaginary[part]
-        )
-        results.append(Moments(values, (low, high), not np.any(values)))
-        first = part.stop
-    return results
+    values = _sum_of_rings(kernels.azimuth, basis, stacks, harmonics)
+    return [Moments(value, (low, high), not np.any(value)) for value in values]
+
+
+def _sum_of_rings(
+    azimuth: Floats, basis: Floats, stacks: Sequence[RingStack], harmonics: int
+) -> Complexes:
+    """Return moments of spots whose rings follow each other, (n_spot, harmonics + 1, terms)."""
+    factor = np.concatenate([_extent(rings, harmonics) for rings in stacks])
+    ends = np.cumsum([len(rings.colatitude) for rings in stacks])
+    values = np.zeros((len(stacks), harmonics + 1, basis.shape[2]), complex)
+    chunk = max(1, _LARGEST // ((harmonics + 1) * azimuth.shape[1]))
+    for first in range(0, len(azimuth), chunk):
+        rows = slice(first, first + chunk)
+        cosine, sine = _waves(azimuth[rows], harmonics)
+        real, imaginary = cosine @ basis[rows], sine @ basis[rows]
+        for value, end, rings in zip(values, ends, stacks, strict=True):
+            start, stop = max(end - len(rings.colatitude), first), min(end, first + chunk)
+            if start < stop:
+                weight, own = factor[start:stop], slice(start - first, stop - first)
+                value += np.einsum("rm,rmj->mj", weight, real[own])
+                value -= 1j * np.einsum("rm,rmj->mj", weight, imaginary[own])
+    return values
 
 
 def _extent(rings: RingStack, harmonics: int) -> Floats:
