@@ -40,7 +40,7 @@ from exptime.star.view import View
 
 Interval = tuple[float, float]
 
-_LARGEST = 400_000
+_LARGEST = 100_000
 """Waves kept at once: beyond the processor's cache more at a time is slower."""
 
 
