@@ -245,7 +245,7 @@ def constraint_at(setting: Setting, quantity: Quantity, value: float) -> Constra
     origin = origin.copy()
     origin[held] = value
     kept = [identity[k] for k in range(len(names)) if free[k] and k != held]
-    return Constraint(origin=origin, directions=np.array(kept).T)
+    return Constraint(origin=origin, directions=np.array(kept).reshape(-1, len(names)).T)
 
 
 def free_constraint(setting: Setting) -> Constraint:

@@ -12,6 +12,7 @@ _TOLERATED = 0.15
 _TOLERATED_SIDE = 0.30
 _MANY_ELSEWHERE = 0.05
 _SIGMAS = 3.0
+_MOST_OF = 0.95
 _GRAVEST_FIRST: tuple[Verdict, ...] = (
     *("multimodal", "optimistic", "prior-limited", "pessimistic", "holds"),
 )
@@ -70,7 +71,7 @@ def verdict_of(
             )
     scatter = _scatter_of(profile, simulations)
     ratios = [("the profile likelihood", profile.ratio, _TOLERATED)]
-    if scatter is not None and simulations is not None:
+    if scatter is not None and simulations is not None and simulations.converged:
         allowed = max(_TOLERATED, _SIGMAS / math.sqrt(2.0 * simulations.converged))
         ratios.append((f"{simulations.converged} refits", scatter.ratio, allowed))
     for witness, ratio, allowed in ratios:
@@ -79,15 +80,21 @@ def verdict_of(
             return "optimistic", f"The bound is optimistic {size}, by {witness}."
         if ratio < 1.0 - allowed:
             return "pessimistic", (
-                f"The bound is pessimistic: {witness} gives {ratio:.2f} of it, because limits or "
-                "a fold of the ridge cut the range of fits."
+                f"The bound is pessimistic: {ratio:.2f} of it by {witness}, because limits or a "
+                "fold of the ridge cut the range of fits."
             )
     lopsided = _lopsided(profile)
     if lopsided is not None:
         return lopsided
-    return "holds", "The bound holds: " + ", ".join(
-        f"{witness} gives {ratio:.2f} of it" for witness, ratio, _ in ratios
-    ) + "."
+    found = ", ".join(f"{ratio:.2f} of it by {witness}" for witness, ratio, _ in ratios)
+    return "holds", f"The bound holds: {found}.{_unconverged(simulations)}"
+
+
+def _unconverged(simulations: Simulations | None) -> str:
+    if simulations is None or simulations.converged >= _MOST_OF * simulations.asked:
+        return ""
+    lost = simulations.asked - simulations.converged
+    return f" But {lost} of {simulations.asked} refits did not converge and are left out."
 
 
 def overall(words: Sequence[Verdict]) -> Verdict:
