@@ -32,8 +32,9 @@ from exptime.star.view import view_of
 from exptime.study.records import Goal
 from exptime.target.records import Target
 
-_TOLERANCE = 2e-5
-_MOST_HARMONICS = 128
+TOLERANCE = 2e-5
+MOST_HARMONICS = 128
+"""What the pulses of a forecast reach: sigma(radius) is then good to some parts in a thousand."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -130,8 +131,8 @@ def resolutions_for(question: Question, geometry: Geometry) -> list[Resolution]:
         phase_bins=question.instrument.phase_bins,
         lowest_kev=float(nodes[0]),
         highest_kev=float(nodes[-1]),
-        tolerance=_TOLERANCE,
-        most_harmonics=max(_MOST_HARMONICS, 2 * question.instrument.phase_bins),
+        tolerance=TOLERANCE,
+        most_harmonics=max(MOST_HARMONICS, 2 * question.instrument.phase_bins),
     )
     view = view_of(star)
     return [resolution_needed(view, spot, question.target.emission, accuracy) for spot in spots]

@@ -18,6 +18,7 @@ from exptime.star.convergence import Accuracy, resolution_needed
 from exptime.star.records import Emission, HotSpot, Star
 from exptime.star.resolution import Resolution
 from exptime.star.view import star_fault, view_of
+from exptime.study.case import MOST_HARMONICS, TOLERANCE
 from exptime.target.records import Measured, Target
 
 
@@ -108,15 +109,15 @@ def flat_response(low: float, high: float, channels: int, nodes: int, area_cm2: 
 
 
 def resolutions_of(
-    scene: Scene, phase_bins: int = 32, tolerance: float = 1e-5, highest_kev: float = 3.0
+    scene: Scene, phase_bins: int = 32, tolerance: float = TOLERANCE, highest_kev: float = 3.0
 ) -> list[Resolution]:
-    """Choose the resolution of every spot of a scene."""
+    """Choose the resolution of every spot of a scene, by default that of a forecast."""
     accuracy = Accuracy(
         phase_bins=phase_bins,
         lowest_kev=0.3,
         highest_kev=highest_kev,
         tolerance=tolerance,
-        most_harmonics=256,
+        most_harmonics=MOST_HARMONICS,
     )
     view = view_of(scene.star)
     return [resolution_needed(view, spot, scene.emission, accuracy) for spot in scene.spots]
