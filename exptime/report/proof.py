@@ -190,8 +190,8 @@ def _named(quantity: Quantity) -> str:
 
 
 def _placed(number: float, bound: float) -> str:
-    """Return a number to the digits that an uncertainty deserves."""
-    return f"{number:.{max(0, decimals_of_uncertainty(bound))}f}"
+    """Return a number to the digits that an uncertainty deserves, and one more."""
+    return f"{number:.{max(0, 1 + decimals_of_uncertainty(bound))}f}"
 
 
 def _degrees(angle: float) -> str:
