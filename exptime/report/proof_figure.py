@@ -59,7 +59,7 @@ def _draw(verification: Verification) -> Figure:
         _draw_geometry(axes, geometry)
         if count > 1:
             axes.annotate(
-                geometry.label, (0.5, 0.97), xycoords="axes fraction", ha="center", va="top",
+                geometry.label, (0.01, 0.97), xycoords="axes fraction", ha="left", va="top",
                 color=INK, fontsize=8.5,
             )  # fmt: skip
     legend_above(panels[0], 3)

@@ -57,8 +57,8 @@ def test_version_is_printed() -> None:
     [
         (
             ["forcast"],
-            "exptime: command 'forcast' is none of start, instruments, check, pulse, forecast; "
-            "did you mean forecast. See exptime --help.\n",
+            "exptime: command 'forcast' is none of start, instruments, check, pulse, forecast, "
+            "verify; did you mean forecast. See exptime --help.\n",
         ),
         (
             ["forecast", "a.yaml", "-i", "b", "--exposre", "1Ms"],

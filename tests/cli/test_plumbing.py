@@ -104,6 +104,8 @@ def test_forecast_passes_every_option_on(science: Science) -> None:
             "seed": 7,
             "jobs": 3,
             "fixed_star": True,
+            "verify": False,
+            "simulations": 0,
             "progress": silent,
         },
     )
@@ -275,8 +277,7 @@ def test_pulse_with_an_instrument_gives_expected_counts(science: Science) -> Non
         ),
         (
             ("-i", "soft", "--exposure", "1Ms,2Ms"),
-            "--exposure: '1Ms,2Ms' is 2 exposures; one is wanted here. "
-            "Write for example 300 ks.",
+            "--exposure: '1Ms,2Ms' is 2 exposures; one is wanted here. Write for example 300 ks.",
         ),
         (("--phases", "3"), "--phases: 3 is not between 4 and 1024."),
     ],

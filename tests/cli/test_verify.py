@@ -34,15 +34,17 @@ def folder(empty_folder: Path) -> Path:
 
 
 def test_a_run_is_kept_and_taken_up_again(folder: Path) -> None:
-    """The second run finds all refits in the file; a third adds to them; the answers agree."""
+    """The second run adds to what it finds in the file, and the answer holds all."""
     arguments = (*COMMAND, "--resume", "kept.json", "--format", "json", "--simulations")
     first = run(*arguments, "2")
     assert (first.status, first.errors) == (0, "")
-    kept = Path("kept.json").read_text(encoding="utf-8")
-    assert run(*arguments, "2") == first
-    assert Path("kept.json").read_text(encoding="utf-8") == kept
+    kept = json.loads(Path("kept.json").read_text(encoding="utf-8"))["refits"]
+    assert len(kept) == 2
     more = json.loads(run(*arguments, "3").output)["geometries"][0]["simulations"]
     assert more["asked"] == 3
+    now = json.loads(Path("kept.json").read_text(encoding="utf-8"))["refits"]
+    assert len(now) == 3
+    assert now | kept == now
     assert json.loads(first.output)["verdict"] == "holds"
 
 
