@@ -127,7 +127,8 @@ def procedure(verification: Verification) -> tuple[str, ...]:
         )
     sentences.append(
         "A bound holds here when profile and scatter agree with it to 15 per cent (few refits: to "
-        "three standard errors) and each side of the interval to 30: common practice, no law."
+        "three standard errors), each side of the interval to 30, and the coverage is not short of "
+        "68 per cent by three standard errors: common practice, no law."
     )
     if len(verification.geometries) > 1:
         sentences.append(

@@ -13,9 +13,9 @@ from exptime.information.model import Bounds
 from exptime.information.precision import QUANTITIES
 from exptime.information.refit import fit
 from exptime.study.profile import Setting, free_constraint, value_of
+from exptime.study.verdict import NORMAL_SHARE as NORMAL_SHARE
 from exptime.study.verify_records import Refit, Scatter, Simulations
 
-NORMAL_SHARE = 0.6827
 _PERTURBATION = 0.5
 _FAR_SIGMA = 5.0
 _MOST_TRIES = 3

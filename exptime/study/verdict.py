@@ -8,6 +8,7 @@ from collections.abc import Sequence
 from exptime.study.profile import Profile
 from exptime.study.verify_records import Hump, Scatter, Simulations, Verdict
 
+NORMAL_SHARE = 0.6827
 _TOLERATED = 0.15
 _TOLERATED_SIDE = 0.30
 _MANY_ELSEWHERE = 0.05
@@ -45,8 +46,9 @@ def verdict_of(
     Notes
     -----
     A bound holds when profile and scatter agree with it to 15 per cent, or, for the scatter of
-    few refits, to three of their own standard errors; and when each side of the profile's
-    interval agrees with it to 30 per cent.
+    few refits, to three of their own standard errors; when the coverage is not short of 68 per
+    cent by three of its standard errors; and when each side of the profile's interval agrees
+    with the bound to 30 per cent.
     """
     profile = profiles[0]
     if is_prior_limited:
@@ -83,6 +85,11 @@ def verdict_of(
                 f"The bound is pessimistic: {ratio:.2f} of it by {witness}, because limits or a "
                 "fold of the ridge cut the range of fits."
             )
+    if scatter is not None and scatter.coverage < NORMAL_SHARE - _SIGMAS * scatter.coverage_error:
+        return "optimistic", (
+            f"The bound is optimistic: the interval it gives holds the truth in only "
+            f"{100.0 * scatter.coverage:.0f} per cent of the refits, not in 68."
+        )
     lopsided = _lopsided(profile)
     if lopsided is not None:
         return lopsided

@@ -37,9 +37,11 @@ def hump(radius_km: float) -> Hump:
     )  # fmt: skip
 
 
-def refits(ratio: float = 1.0, converged: int = 400, elsewhere: int = 0) -> Simulations:
+def refits(
+    ratio: float = 1.0, converged: int = 400, elsewhere: int = 0, coverage: float = 0.68
+) -> Simulations:
     scatter = Scatter(
-        quantity="radius", bound=BOUND, deviation=ratio * BOUND, bias=0.0, coverage=0.68,
+        quantity="radius", bound=BOUND, deviation=ratio * BOUND, bias=0.0, coverage=coverage,
         coverage_error=0.02,
     )  # fmt: skip
     return Simulations(
@@ -66,6 +68,8 @@ def refits(ratio: float = 1.0, converged: int = 400, elsewhere: int = 0) -> Simu
         # Twenty refits know their scatter to 16 per cent: a factor 1.3 is no contradiction.
         ("holds", (1.0, 1.0), [], refits(1.3, converged=20), "20 refits"),
         ("optimistic", (1.0, 1.0), [], refits(1.6, converged=20), "20 refits"),
+        ("optimistic", (1.0, 1.0), [], refits(coverage=0.60), "only 60 per cent"),
+        ("holds", (1.0, 1.0), [], refits(coverage=0.64), "400 refits"),
         ("multimodal", (1.0, 1.0), [hump(13.0)], None, "13.00 km, inclination 40 deg"),
         ("holds", (1.0, 1.0), [hump(12.3)], None, "1.00"),
         ("multimodal", (1.0, 1.0), [], refits(elsewhere=40), "10 per cent of 400"),
