@@ -56,21 +56,9 @@ def verdict_of(
             f"The {profile.quantity} is prior-limited: what was known beforehand says more than "
             "the data, and the bound is no measurement."
         )
-    away = [hump for hump in humps if abs(_value(hump, profile) - profile.truth) > profile.bound]
-    if away:
-        hump = away[0]
-        return "multimodal", (
-            f"Another solution fits the expected data as well (deviance {hump.rise:.2g} above the "
-            f"first) at {hump.radius_km:.2f} km, inclination "
-            f"{math.degrees(hump.inclination):.0f} deg: the bound sees only one of them."
-        )
-    if simulations is not None and simulations.converged:
-        share = simulations.elsewhere / simulations.converged
-        if share > _MANY_ELSEWHERE:
-            return "multimodal", (
-                f"{100 * share:.0f} per cent of {simulations.converged} refits ended at another "
-                "solution: the bound sees only one of them."
-            )
+    other = _other_solution(profile, humps, simulations)
+    if other is not None:
+        return "multimodal", other
     scatter = _scatter_of(profile, simulations)
     ratios = [("the profile likelihood", profile.ratio, _TOLERATED)]
     if scatter is not None and simulations is not None and simulations.converged:
@@ -107,6 +95,27 @@ def _unconverged(simulations: Simulations | None) -> str:
 def overall(words: Sequence[Verdict]) -> Verdict:
     """Return the verdict over several geometries: the gravest of theirs."""
     return next(word for word in _GRAVEST_FIRST if word in words)
+
+
+def _other_solution(
+    profile: Profile, humps: Sequence[Hump], simulations: Simulations | None
+) -> str | None:
+    away = [hump for hump in humps if abs(_value(hump, profile) - profile.truth) > profile.bound]
+    if away:
+        hump = away[0]
+        return (
+            f"Another solution fits the expected data as well (deviance {hump.rise:.2g} above the "
+            f"first) at {hump.radius_km:.2f} km, inclination "
+            f"{math.degrees(hump.inclination):.0f} deg: the bound sees only one of them."
+        )
+    if simulations is not None and simulations.converged:
+        share = simulations.elsewhere / simulations.converged
+        if share > _MANY_ELSEWHERE:
+            return (
+                f"{100 * share:.0f} per cent of {simulations.converged} refits ended at another "
+                "solution: the bound sees only one of them."
+            )
+    return None
 
 
 def _lopsided(profile: Profile) -> tuple[Verdict, str] | None:
