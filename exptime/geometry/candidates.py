@@ -3,14 +3,16 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Callable
 from dataclasses import dataclass, replace
 from typing import Final
 
 import numpy as np
 
-from exptime.arrays import Booleans, Floats
+from exptime.arrays import Booleans, Complexes, Floats
+from exptime.constants import PARSEC_KM
 from exptime.geometry.likelihood import bands_of, fractions_of, log_likelihood
+from exptime.observation.bands import joined
+from exptime.observation.fold import fold_rate
 from exptime.observation.rates import source_harmonics
 from exptime.observation.response import Response, timing_factor
 from exptime.observation.scene import Scene
@@ -26,11 +28,12 @@ from exptime.target.defaults import (
 )
 from exptime.target.records import Target
 
-_ROUGH: Final = Resolution(harmonics=1, rings=8, redshift_terms=8)
 _FINE: Final = Resolution(harmonics=24, rings=8, redshift_terms=8)
 LARGEST_RATIO: Final = 3.0
 _LARGEST_RADIUS = 0.5 * math.pi
-_FLUX_TOLERANCE = 3e-3
+_FLUX_TOLERANCE = 1e-2
+_USUAL_SCALE = 0.1
+_COSINES = np.cos(2.0 * np.pi * np.arange(32) / 32.0)
 _FLUX_STEPS = 12
 
 
@@ -117,11 +120,10 @@ def evaluate(search: Search, point: Floats) -> Candidate | None:
         return None
     view = View(star, load_ray_table(), np.empty(0))
     shape = _shape_at(search, star, point)
-    spots = _scaled_to_flux(search, view, shape)
-    if spots is None:
+    scaled = _scaled_to_flux(search, view, shape)
+    if scaled is None:
         return None
-    scene = _scene(search.target, star, spots)
-    harmonics = source_harmonics(scene, view, search.pulses, (_FINE, _FINE))
+    spots, harmonics = scaled
     harmonics *= timing_factor(search.pulses, star.spin_hz, _FINE.harmonics)
     bands = bands_of(search.target)
     fractions = fractions_of(search.target, bands, harmonics)
@@ -206,8 +208,12 @@ def _shape_at(search: Search, star: Star, point: Floats) -> tuple[HotSpot, HotSp
 
 def _scaled_to_flux(
     search: Search, view: View, shape: tuple[HotSpot, HotSpot]
-) -> tuple[HotSpot, ...] | None:
-    """Scale the spots until they give the flux; None where none of their sizes does."""
+) -> tuple[tuple[HotSpot, ...], Complexes] | None:
+    """Scale the spots until they give the flux; None where none of their sizes does.
+
+    Returns spots and the harmonics of their pulse in the measured bands, taken at a scale within
+    half a per cent of theirs.
+    """
     wanted = search.target.flux
     if wanted is None:
         raise ValueError("the target has no flux")
@@ -215,28 +221,22 @@ def _scaled_to_flux(
         _separation(*shape) / (shape[0].angular_radius + shape[1].angular_radius),
         _LARGEST_RADIUS / max(spot.angular_radius for spot in shape),
     )
-
-    def shortfall(scale: float) -> float:
-        scene = _scene(search.target, view.star, _resized(shape, scale))
-        flux = float(source_harmonics(scene, view, search.flux, (_ROUGH, _ROUGH))[0, 0].real)
-        return math.log(wanted.value / flux) if flux > 0.0 else math.inf
-
-    scale = _scale_without_shortfall(shortfall, largest)
-    return None if scale is None else _resized(shape, scale)
-
-
-def _scale_without_shortfall(shortfall: Callable[[float], float], largest: float) -> float | None:
-    """Solve ln(wanted/flux) = 0 for the scale: the flux grows about as its square."""
-    low, high, scale, slope = 0.0, largest, min(0.1, 0.5 * largest), 2.0
+    response = joined([search.flux, search.pulses])
+    scale = min(_first_scale(search, view.star, shape), 0.9 * largest)
+    low, high, slope = 0.0, largest, 2.0
     last: tuple[float, float] | None = None
     for _ in range(_FLUX_STEPS):
-        missing = shortfall(scale)
+        scene = _scene(search.target, view.star, _resized(shape, scale))
+        harmonics = source_harmonics(scene, view, response, (_FINE, _FINE))
+        flux = float(harmonics[0, 0].real)
+        missing = math.log(wanted.value / flux) if flux > 0.0 else math.inf
         if last is not None and missing != last[1] and math.isfinite(missing):
             slope = (last[1] - missing) / (math.log(scale) - last[0])
             slope = min(max(slope, 1.0), 4.0)
+        # Flux grows about as the square of the scale.
         step = scale * math.exp(min(missing / slope, 50.0))
         if abs(missing) <= _FLUX_TOLERANCE:
-            return min(step, largest)
+            return _resized(shape, min(step, largest)), harmonics[:, 1:]
         if missing > 0.0 and scale == largest:
             return None
         low, high = (scale, high) if missing > 0.0 else (low, scale)
@@ -246,6 +246,32 @@ def _scale_without_shortfall(shortfall: Callable[[float], float], largest: float
         else:
             scale = largest if high == largest else 0.5 * (low + high)
     return None
+
+
+def _first_scale(search: Search, star: Star, shape: tuple[HotSpot, HotSpot]) -> float:
+    """Guess the scale from point spots on a slowly turning star (Beloborodov 2002)."""
+    wanted = search.target.flux
+    shift = star.redshift_factor
+    rate = fold_rate(
+        search.flux,
+        search.target.column_density.value,
+        shape[0].temperature_kev,
+        (shift * (1.0 - 1e-9), shift * (1.0 + 1e-9)),
+        1,
+    )
+    u = 2.0 * star.compactness
+    sine = math.sqrt(max(0.0, 1.0 - star.cos_inclination**2))
+    seen = 0.0
+    for spot in shape:
+        along = star.cos_inclination * math.cos(spot.colatitude)
+        across = sine * math.sin(spot.colatitude)
+        cos_alpha = np.maximum(u + (1.0 - u) * (along + across * _COSINES), 0.0)
+        seen += spot.angular_radius**2 * float(cos_alpha.mean())
+    size = star.radius_km / (search.target.distance.value * PARSEC_KM)
+    unit = float(rate[0, 0]) * math.pi * size**2 * seen
+    if wanted is None or unit <= 0.0:
+        return _USUAL_SCALE
+    return math.sqrt(wanted.value / unit)
 
 
 def _resized(shape: tuple[HotSpot, ...], scale: float) -> tuple[HotSpot, ...]:

@@ -72,17 +72,29 @@ def band_responses(
     read_instrument : callable
         Reads an instrument by id or path.
     """
-    parts = [_of_band(band, absorption, read_instrument) for band in bands]
-    sizes = [len(part.nodes_kev) for part in parts]
-    matrix = np.zeros((sum(sizes), len(parts)))
-    for column, (part, end) in enumerate(zip(parts, np.cumsum(sizes), strict=True)):
-        matrix[end - sizes[column] : end, column] = part.matrix[:, 0]
+    return joined([_of_band(band, absorption, read_instrument) for band in bands])
+
+
+def joined(parts: Sequence[Response]) -> Response:
+    """Return one response with the channels of several, one after the other."""
+    rows = np.cumsum([0, *(len(part.nodes_kev) for part in parts)])
+    columns = np.cumsum([0, *(part.matrix.shape[1] for part in parts)])
+    matrix = np.zeros((rows[-1], columns[-1]))
+    for index, part in enumerate(parts):
+        own = slice(rows[index], rows[index + 1]), slice(columns[index], columns[index + 1])
+        matrix[own] = part.matrix
+    widths = np.diff(columns)
+
+    def of_channels(values: Sequence[float | Floats]) -> Floats:
+        pairs = zip(values, widths, strict=True)
+        return np.concatenate([np.broadcast_to(value, width) for value, width in pairs])
+
     return Response(
         nodes_kev=np.concatenate([part.nodes_kev for part in parts]),
         matrix=matrix,
         cross_section_cm2=np.concatenate([part.cross_section_cm2 for part in parts]),
-        time_bin_s=np.array([part.time_bin_s for part in parts]),
-        clock_error_s=np.array([part.clock_error_s for part in parts]),
+        time_bin_s=of_channels([part.time_bin_s for part in parts]),
+        clock_error_s=of_channels([part.clock_error_s for part in parts]),
     )
 
 

@@ -17,6 +17,7 @@ from exptime.star.view import View, check_star, view_of
 
 _FEWEST_HARMONICS = 16
 _FEWEST_RINGS = 8
+_PLENTY = 64
 _MOST_RINGS = 256
 _SPECTRUM_SHARE = 1e-3
 
@@ -114,30 +115,31 @@ def resolution_needed(
         _SPECTRUM_SHARE * accuracy.tolerance,
     )
     resolution = replace(start, redshift_terms=terms)
+    pulse = _pulse(view, spot, emission, accuracy, resolution)
     while True:
-        resolution, harmonics = _with_enough_rings(view, spot, emission, accuracy, resolution)
-        if (
-            2 * resolution.harmonics > accuracy.most_harmonics
-            or _remainder(harmonics, accuracy) < accuracy.tolerance
-        ):
-            return resolution
-        resolution = replace(resolution, harmonics=2 * resolution.harmonics)
-
-
-def _with_enough_rings(
-    view: View, spot: HotSpot, emission: Emission, accuracy: Accuracy, start: Resolution
-) -> tuple[Resolution, Complexes]:
-    """Double the rings until that no longer matters; return the coarser of the last two."""
-    coarse, pulse = start, _pulse(view, spot, emission, accuracy, start)
-    while coarse.rings < _MOST_RINGS:
-        fine = replace(coarse, rings=2 * coarse.rings)
+        can_grow = 2 * resolution.harmonics <= accuracy.most_harmonics
+        is_short = can_grow and _remainder(pulse, accuracy) >= accuracy.tolerance
+        if is_short and resolution.harmonics < _PLENTY:
+            # Cheap to double; rings are looked at once the harmonics are about enough.
+            resolution = replace(resolution, harmonics=2 * resolution.harmonics)
+            pulse = _pulse(view, spot, emission, accuracy, resolution)
+            continue
+        fine = replace(resolution, rings=2 * resolution.rings)
         finer = _pulse(view, spot, emission, accuracy, fine)
-        change = bin_averages(finer - pulse, accuracy.phase_bins)
-        peak = np.abs(bin_averages(finer, accuracy.phase_bins)).max(axis=0)
-        if np.all(np.abs(change).max(axis=0) <= accuracy.tolerance * peak):
-            break
-        coarse, pulse = fine, finer
-    return coarse, pulse
+        if fine.rings <= _MOST_RINGS and not _agree(finer, pulse, accuracy):
+            resolution, pulse = fine, finer
+        elif is_short:
+            resolution = replace(resolution, harmonics=2 * resolution.harmonics)
+            pulse = _pulse(view, spot, emission, accuracy, resolution)
+        else:
+            return resolution
+
+
+def _agree(finer: Complexes, coarser: Complexes, accuracy: Accuracy) -> bool:
+    """Whether twice the rings move no bin by more than the tolerance."""
+    change = bin_averages(finer - coarser, accuracy.phase_bins)
+    peak = np.abs(bin_averages(finer, accuracy.phase_bins)).max(axis=0)
+    return bool(np.all(np.abs(change).max(axis=0) <= accuracy.tolerance * peak))
 
 
 def _pulse(
