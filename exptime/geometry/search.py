@@ -34,7 +34,7 @@ _MOST_ROUNDS = 24
 _PATIENCE = 5
 """Rounds after which a measurement far beyond all candidates is given up."""
 
-_ENOUGH = 1.2
+_ENOUGH = 1.0
 _KERNELS_WANTED = 40.0
 _UNIFORM_SHARE = 0.2
 _SOFTEST = 1e-6

@@ -32,7 +32,7 @@ from exptime.star.view import view_of
 from exptime.study.records import Goal
 from exptime.target.records import Target
 
-TOLERANCE = 2e-5
+TOLERANCE = 4e-5
 MOST_HARMONICS = 128
 """What the pulses of a forecast reach: sigma(radius) is then good to some parts in a thousand."""
 
