@@ -203,7 +203,7 @@ def test_the_page_is_one_html_document_that_loads_nothing(folder: Path) -> None:
     assert "<script>alert" not in page
     assert "&lt;script&gt;" in page
     assert page.count("<link") == 1
-    for tag in ("src=", "<link rel=\"icon\" href=", "@import", "url("):
+    for tag in ("src=", '<link rel="icon" href=', "@import", "url("):
         for piece in page.split(tag)[1:]:
             assert piece.lstrip("\"'").startswith(("data:", "#")), piece[:80]
 
